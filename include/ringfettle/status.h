@@ -12,10 +12,10 @@
 
 #if defined(__GNUC__)
 #define RF_API __attribute__((visibility("default")))
-#define RF_PRINTF(format, first) __attribute__((format(printf, format, first)))
+#define RF_PRINTF(template, first) __attribute__((format(printf, template, first)))
 #else
 #define RF_API
-#define RF_PRINTF(format, first)
+#define RF_PRINTF(template, first)
 #endif
 
 #ifdef __cplusplus

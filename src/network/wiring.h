@@ -47,12 +47,11 @@ struct parameter {
     double sigma; /* a factor exp(σθ) on resistances, on the gain; or σθ Ω for offsets */
 };
 
-/* Where the fixed parameters stand in θ; −1 where a job has no use for one. Fault parameters
- * follow from `n_common` on. */
+/* Where the fixed parameters stand in θ. Fault parameters follow from `n_common` on. */
 struct parameter_map {
     int runs;      /* the first of n_runs(job) */
     int conductor[N_CONDUCTORS];
-    int unknown_cpc; /* in place of the CPC's where its size is not known */
+    int unknown_cpc; /* in place of the CPC's in runs whose CPC is not known; NO_PARAMETER: none is */
     int gain, lead, face, wander;
     int n_common;
 };
@@ -63,10 +62,10 @@ struct wiring {
     struct parameter_map map;
     struct parameter *parameters; /* n_parameters ≤ n_common + FAULTS_AT_ONCE */
     int n_parameters;
-    int n_nodes;
+    int n_nodes, max_nodes;
     int *front;   /* [place·3 + conductor]: node the meter meets there, −1 on a place without */
     struct wire *wires;
-    size_t n_wires;
+    size_t n_wires, max_wires;
     struct links links[N_SETUPS];
     int offset_parameter;  /* a log-normal offset on every reading, or NO_PARAMETER */
     double offset_ohms;    /* its value at θ = 0 */
@@ -97,8 +96,9 @@ void wiring_add_resistor(struct wiring *wiring, int a, int b, double ohms, int p
 /* `metres` of the ring's cable, one conductor of it, its length scaling with `parameter`. */
 void wiring_add_cable(struct wiring *wiring, enum conductor conductor, int a, int b, double metres,
                       int parameter);
-/* Every piece of that run's conductor. `next` starts at 0; NULL at the end. */
-struct wire *wiring_run_wires(struct wiring *wiring, size_t run, enum conductor conductor,
+/* The pieces of that run's conductor that are there, one a call. `next` starts at 0; NULL at the
+ * end. Pieces added meanwhile are met too. */
+struct wire *wiring_next_piece(struct wiring *wiring, size_t run, enum conductor conductor,
                               size_t *next);
 /* The run's end at `place` now goes to `nodes[conductor]` instead of the place's terminals. */
 void wiring_move_end(struct wiring *wiring, size_t run, size_t place, const int nodes[N_CONDUCTORS]);
