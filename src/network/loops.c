@@ -4,7 +4,7 @@
 #include "base/cholesky.h"
 #include "base/memory.h"
 
-#include <stdint.h>
+#include <math.h>
 #include <string.h>
 
 /*
@@ -285,7 +285,12 @@ size_t loops_columns(const struct loops *l, const int **edge_of_column)
 enum rf_status loops_factor(struct loops *l, const double r[])
 {
     size_t n = l->n_columns, k = l->n_loops;
-    memcpy(l->r, r, n * sizeof *r);
+    /* Outside every loop a bad one would not show in the matrix. */
+    for (size_t c = 0; c < n; c++) {
+        if (!(r[c] > 0.0) || !isfinite(r[c]))
+            return RF_NUMERICAL;
+        l->r[c] = r[c];
+    }
     for (size_t i = 0; i < k; i++) {
         const float *row = l->loop_rows + i * n;
         double *weighted = l->weighted + i * n;
