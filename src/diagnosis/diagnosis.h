@@ -1,0 +1,112 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef DIAGNOSIS_DIAGNOSIS_H
+#define DIAGNOSIS_DIAGNOSIS_H
+
+/*
+ * The path of a diagnosis, one file a step:
+ *
+ *   enumerate → rank (fit each, weigh) → misfit → places → findings → blind
+ *
+ * What is over range is NAN wherever ohms are kept here.
+ */
+
+#include "faults/fault.h"
+#include "fit/fit.h"
+
+#include <ringfettle/diagnosis.h>
+
+/* A fault's parameter, Ω or m, and its 90 % interval. */
+struct estimate {
+    bool known;  /* this fault has a parameter */
+    bool metres; /* else Ω */
+    double value, low, high;
+};
+
+/* A hypothesis with at least `confidence_shown` of the confidence. */
+struct ranked {
+    struct hypothesis hypothesis;
+    double confidence;
+    double log_prior, log_evidence; /* the prior is that of the base rates in the models */
+    struct estimate estimates[FAULTS_AT_ONCE]; /* one a fault */
+    char *words;
+    size_t n_parameters;
+    double *theta;  /* θ̂ */
+    double *factor; /* n_parameters², Cholesky factor of I + JᵀWJ; θ ~ N(θ̂, its inverse) */
+    double *fitted; /* [reading of the job] Ω, NAN: over range */
+};
+
+/* Hypotheses the readings cannot tell apart, as one finding. */
+struct finding {
+    char *words;
+    double confidence;
+    size_t n_members;
+    size_t *members; /* indices into ranked, best first */
+    bool is_none;    /* the finding that nothing is wrong with the ring or the test */
+};
+
+/* Where looking would show something, and the chance that it does. */
+struct place_chance {
+    struct look look; /* `share` unused */
+    double chance;
+};
+
+/* A reading that does not fit the best explanation: chance of being a misread above one half. */
+struct suspect {
+    size_t reading; /* of the job */
+};
+
+/* A kind of fault the readings taken could not have shown. */
+struct blind_spot {
+    struct fault example; /* one member of the kind */
+    double share;         /* of the kind's members that would not have shown; 1: none would */
+    char *words;
+};
+
+/* Summed confidence of what would be dangerous in one way. */
+struct danger_chance {
+    enum danger danger;
+    double chance;
+};
+
+struct rf_diagnosis {
+    const struct rf_job *job;
+    const struct rf_models *models;
+    struct wiring ring; /* as recorded */
+    size_t n_hypotheses;
+    size_t n_ranked;
+    struct ranked *ranked; /* best first */
+    size_t n_findings;
+    struct finding *findings; /* best first */
+    size_t n_places;
+    struct place_chance *places; /* by chance */
+    size_t n_suspects;
+    struct suspect *suspects;
+    size_t n_blind;
+    struct blind_spot *blind;
+    struct danger_chance dangers[N_DANGERS]; /* indexed by danger; [0] unused */
+    double *sound; /* [reading] what a ring wired as recorded would read, from the job's record
+                    * (lengths and cable) and not from its readings: the prior's median */
+    struct {
+        double p;
+        bool flag;
+        size_t written_off; /* readings the best fit takes for misreads or wrong opens */
+        double chi_square;  /* of the rest, with the penalty */
+        size_t degrees;
+    } misfit;
+    bool found_known; /* the job says what was found */
+    struct hypothesis found;
+    size_t found_rank;       /* 0: first; n_ranked where it is not among them */
+    double found_confidence; /* 0 where it was not compared */
+};
+
+/* Hypotheses below this are not listed. */
+extern const double confidence_shown;
+
+/* Words for a whole hypothesis: its faults joined by "and". */
+void hypothesis_words(const struct hypothesis *hypothesis, const struct rf_job *job,
+                      struct text *out);
+
+/* Words for a danger: "if re-energised, …". Never NULL for a danger there is. */
+extern const char *const danger_words[N_DANGERS];
+
+#endif

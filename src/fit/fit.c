@@ -1,0 +1,321 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "fit/fit.h"
+
+#include "base/cholesky.h"
+#include "base/memory.h"
+
+#include <math.h>
+#include <string.h>
+
+struct fitter {
+    const struct wiring *ring;
+    struct forward *forward;
+    size_t n_observations;
+    struct observation *observations;
+    double log_open_with_path;
+    size_t stride; /* ≥ parameters of any hypothesis */
+
+    double *theta, *trial, *step;
+    double *gradient;      /* [parameter] of F */
+    double *hessian;       /* stride × stride, then its factor */
+    double *weights, *z;   /* [observation] */
+    double *pull, *grip;   /* [measurement] Σ w z / σ and Σ w / σ² over its readings */
+    double *row;           /* [parameter] */
+};
+
+enum noise { NOISE_NORMAL, NOISE_MIXTURE };
+
+void fitter_destroy(struct fitter *f)
+{
+    if (f == NULL)
+        return;
+    forward_destroy(f->forward);
+    free(f->observations);
+    free(f->theta);
+    free(f->trial);
+    free(f->step);
+    free(f->gradient);
+    free(f->hessian);
+    free(f->weights);
+    free(f->z);
+    free(f->pull);
+    free(f->grip);
+    free(f->row);
+    free(f);
+}
+
+/* Lists what is measured, each once, and turns the readings into observations of it. */
+static bool list_measurements(struct fitter *f, struct measurement *list, size_t *n)
+{
+    const struct rf_job *job = f->ring->job;
+    size_t slots = N_SETUPS * (job->n_places + N_SPOTS);
+    size_t *index = NEW_ARRAY(size_t, slots); /* 1 + index of the measurement in that slot */
+    if (index == NULL)
+        return false;
+    *n = 0;
+    for (size_t i = 0; i < job->n_readings; i++) {
+        const struct reading *r = &job->readings[i];
+        size_t slot = r->setup * (job->n_places + N_SPOTS) +
+                      (r->spot == SPOT_POINT ? N_SPOTS + r->place : (size_t)r->spot);
+        if (index[slot] == 0) {
+            list[*n] = (struct measurement){r->setup, r->spot, r->place};
+            index[slot] = ++*n;
+        }
+        f->observations[i] = observe(r, index[slot] - 1, &f->ring->models->instrument);
+    }
+    free(index);
+    return true;
+}
+
+struct fitter *fitter_create(const struct wiring *ring)
+{
+    struct fitter *f = NEW(struct fitter);
+    if (f == NULL)
+        return NULL;
+    size_t n = 0, d = (size_t)ring->map.n_common + FAULTS_AT_ONCE;
+    f->ring = ring;
+    f->stride = d;
+    f->n_observations = ring->job->n_readings;
+    f->log_open_with_path = log_open_with_path(&ring->models->instrument);
+    struct measurement *list = NEW_ARRAY(struct measurement, f->n_observations);
+    f->observations = NEW_ARRAY(struct observation, f->n_observations);
+    f->theta = NEW_ARRAY(double, d);
+    f->trial = NEW_ARRAY(double, d);
+    f->step = NEW_ARRAY(double, d);
+    f->gradient = NEW_ARRAY(double, d);
+    f->hessian = NEW_ARRAY(double, d * d);
+    f->weights = NEW_ARRAY(double, f->n_observations);
+    f->z = NEW_ARRAY(double, f->n_observations);
+    f->pull = NEW_ARRAY(double, f->n_observations);
+    f->grip = NEW_ARRAY(double, f->n_observations);
+    f->row = NEW_ARRAY(double, d);
+    bool ok = list != NULL && f->observations != NULL && f->theta != NULL && f->trial != NULL &&
+              f->step != NULL && f->gradient != NULL && f->hessian != NULL && f->weights != NULL &&
+              f->z != NULL && f->pull != NULL && f->grip != NULL && f->row != NULL &&
+              list_measurements(f, list, &n);
+    if (ok)
+        f->forward = forward_create(ring, list, n);
+    free(list);
+    if (f->forward != NULL)
+        return f;
+    fitter_destroy(f);
+    return NULL;
+}
+
+const struct forward *fitter_forward(const struct fitter *f)
+{
+    return f->forward;
+}
+
+size_t fitter_observations(const struct fitter *f, const struct observation **observations)
+{
+    *observations = f->observations;
+    return f->n_observations;
+}
+
+/* −log-likelihood at the means evaluated last; fills weights and z. With normal noise every
+ * finite reading with a path weighs 1, and constants are left out. */
+static double misfit_of_readings(struct fitter *f, enum noise noise)
+{
+    double sum = 0.0;
+    for (size_t i = 0; i < f->n_observations; i++) {
+        const struct observation *o = &f->observations[i];
+        f->weights[i] = 1.0;
+        f->z[i] = 0.0;
+        if (!forward_reachable(f->forward, o->measurement)) {
+            sum -= o->log_no_path;
+        } else if (o->open) {
+            sum -= f->log_open_with_path;
+        } else {
+            double mean = forward_mean(f->forward, o->measurement);
+            double log_likelihood = log_mixture(o, mean, &f->weights[i], &f->z[i]);
+            if (noise == NOISE_NORMAL) {
+                f->weights[i] = 1.0;
+                sum += 0.5 * f->z[i] * f->z[i];
+            } else {
+                sum -= log_likelihood;
+            }
+        }
+    }
+    return sum;
+}
+
+static double half_square(const double *theta, size_t d)
+{
+    double sum = 0.0;
+    for (size_t j = 0; j < d; j++)
+        sum += theta[j] * theta[j];
+    return 0.5 * sum;
+}
+
+/* F at θ, with weights, means and gradients there; infinity where the arithmetic fails, so that a
+ * step there is never taken. */
+static double objective(struct fitter *f, enum noise noise, const double *theta, size_t d)
+{
+    if (forward_evaluate(f->forward, theta) != RF_OK)
+        return INFINITY;
+    double value = misfit_of_readings(f, noise) + half_square(theta, d);
+    return isnan(value) ? INFINITY : value;
+}
+
+static bool observed(const struct fitter *f, const struct observation *o)
+{
+    return !o->open && forward_reachable(f->forward, o->measurement);
+}
+
+/* Repeats of a reading share their row of J, so they are summed before it is used. */
+static void gather(struct fitter *f)
+{
+    size_t n = forward_measurements(f->forward);
+    memset(f->pull, 0, n * sizeof *f->pull);
+    memset(f->grip, 0, n * sizeof *f->grip);
+    for (size_t i = 0; i < f->n_observations; i++) {
+        const struct observation *o = &f->observations[i];
+        if (!observed(f, o))
+            continue;
+        double w = f->weights[i] / o->sigma;
+        f->pull[o->measurement] += w * f->z[i];
+        f->grip[o->measurement] += w / o->sigma;
+    }
+}
+
+/* H = I + JᵀWJ (lower triangle) and the gradient of F at θ, from what was evaluated there. */
+static void normal_equations(struct fitter *f, const double *theta, size_t d)
+{
+    size_t n = forward_measurements(f->forward);
+    gather(f);
+    for (size_t j = 0; j < d; j++) {
+        memset(f->hessian + j * f->stride, 0, (j + 1) * sizeof *f->hessian);
+        f->hessian[j * f->stride + j] = 1.0;
+        f->gradient[j] = theta[j];
+    }
+    for (size_t i = 0; i < n; i++) {
+        double grip = f->grip[i], pull = f->pull[i];
+        if (grip == 0.0)
+            continue;
+        const double *restrict row = forward_gradient(f->forward, i);
+        for (size_t j = 0; j < d; j++) {
+            double *restrict target = f->hessian + j * f->stride;
+            double scaled = grip * row[j];
+            f->gradient[j] -= pull * row[j];
+            if (scaled == 0.0)
+                continue;
+            for (size_t k = 0; k <= j; k++)
+                target[k] += scaled * row[k];
+        }
+    }
+}
+
+enum { MOST_ITERATIONS = 100, MOST_HALVINGS = 12 };
+
+/* A whitened parameter is hardly ever beyond ±5; a longer step is a sign of a poor linearisation,
+ * most of all in the logarithm of a fault's resistance. */
+static const double longest_step = 4.0;
+
+static void shorten(double *step, size_t d)
+{
+    double longest = 0.0;
+    for (size_t j = 0; j < d; j++)
+        longest = fmax(longest, fabs(step[j]));
+    if (longest > longest_step)
+        for (size_t j = 0; j < d; j++)
+            step[j] *= longest_step / longest;
+}
+
+/* Halves the step until F falls; leaves θ and everything evaluated there. False: it never does. */
+static bool descend(struct fitter *f, enum noise noise, size_t d, double *value)
+{
+    double scale = 1.0;
+    for (int halving = 0; halving <= MOST_HALVINGS; halving++, scale *= 0.5) {
+        for (size_t j = 0; j < d; j++)
+            f->trial[j] = f->theta[j] + scale * f->step[j];
+        double trial_value = objective(f, noise, f->trial, d);
+        if (trial_value < *value) {
+            double *swap = f->theta;
+            f->theta = f->trial;
+            f->trial = swap;
+            *value = trial_value;
+            return true;
+        }
+    }
+    return false;
+}
+
+/*
+ * Minimises F from f->theta. Stops when the decrease a full step promises, ½ gᵀH⁻¹g, is below
+ * `promise`. On return means, gradients and weights are those at f->theta, and the Hessian there is
+ * factored. False: the arithmetic failed.
+ */
+static bool minimise(struct fitter *f, enum noise noise, size_t d, double promise, double *value,
+                     struct fit *fit)
+{
+    *value = objective(f, noise, f->theta, d);
+    fit->converged = false;
+    for (int iteration = 0;; iteration++) {
+        if (!isfinite(*value))
+            return false;
+        normal_equations(f, f->theta, d);
+        if (!cholesky_factor(f->hessian, d, f->stride))
+            return false;
+        for (size_t j = 0; j < d; j++)
+            f->step[j] = -f->gradient[j];
+        cholesky_half_solve(f->hessian, d, f->stride, f->step);
+        if (half_square(f->step, d) < promise) {
+            fit->converged = true;
+            return true;
+        }
+        if (iteration == MOST_ITERATIONS)
+            return true;
+        for (size_t j = 0; j < d; j++)
+            f->step[j] = -f->gradient[j];
+        cholesky_solve(f->hessian, d, f->stride, f->step);
+        shorten(f->step, d);
+        fit->iterations++;
+        if (!descend(f, noise, d, value)) {
+            /* At the floor of the arithmetic: put back what belongs to θ. */
+            *value = objective(f, noise, f->theta, d);
+            fit->converged = true;
+            return isfinite(*value);
+        }
+    }
+}
+
+/* Where the first stage may stop early, as only the second's answer counts; and where that stops. */
+static const double first_promise = 1e-3, second_promise = 1e-7;
+
+enum rf_status fitter_fit(struct fitter *f, const struct wiring *wiring, const double start[],
+                          struct fit *fit)
+{
+    size_t d = (size_t)wiring->n_parameters;
+    double value = 0.0;
+    *fit = (struct fit){.n_parameters = d, .stride = f->stride};
+    if (forward_analyse(f->forward, wiring) != RF_OK)
+        return RF_NUMERICAL;
+    if (start != NULL)
+        memcpy(f->theta, start, d * sizeof *start);
+    else
+        memset(f->theta, 0, d * sizeof *f->theta);
+    if (!minimise(f, NOISE_NORMAL, d, first_promise, &value, fit) ||
+        !minimise(f, NOISE_MIXTURE, d, second_promise, &value, fit))
+        return RF_NUMERICAL;
+    fit->penalty = half_square(f->theta, d);
+    fit->log_likelihood = fit->penalty - value;
+    fit->log_det = cholesky_log_det(f->hessian, d, f->stride);
+    fit->log_evidence = -value - 0.5 * fit->log_det;
+    fit->theta = f->theta;
+    fit->factor = f->hessian;
+    fit->weights = f->weights;
+    fit->z = f->z;
+    return isfinite(fit->log_evidence) ? RF_OK : RF_NUMERICAL;
+}
+
+double fit_parameter_sigma(const struct fit *fit, size_t j, double scratch[])
+{
+    memset(scratch, 0, fit->n_parameters * sizeof *scratch);
+    scratch[j] = 1.0;
+    cholesky_half_solve(fit->factor, fit->n_parameters, fit->stride, scratch);
+    double sum = 0.0;
+    for (size_t k = 0; k < fit->n_parameters; k++)
+        sum += scratch[k] * scratch[k];
+    return sqrt(sum);
+}

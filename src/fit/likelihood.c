@@ -1,0 +1,53 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "fit/likelihood.h"
+
+#include <gsl/gsl_math.h>
+#include <math.h>
+
+double instrument_sigma(const struct instrument_model *in, double ohms)
+{
+    double relative = in->noise_relative * ohms;
+    return sqrt(in->noise_floor * in->noise_floor + relative * relative + in->step * in->step / 12.0);
+}
+
+double instrument_misread_density(const struct instrument_model *in, double ohms)
+{
+    return 1.0 / (fmax(ohms, in->misread_floor) * log(in->over_range / in->misread_floor));
+}
+
+struct observation observe(const struct reading *reading, size_t measurement,
+                           const struct instrument_model *in)
+{
+    struct observation o = {.measurement = measurement, .open = reading->open};
+    if (reading->open) {
+        o.log_no_path = log(1.0 - in->open_wrong);
+        return o;
+    }
+    double density = instrument_misread_density(in, reading->ohms);
+    o.ohms = reading->ohms;
+    o.sigma = instrument_sigma(in, reading->ohms);
+    o.log_peak = log((1.0 - in->open_wrong) * (1.0 - in->misread) / (o.sigma * sqrt(2.0 * M_PI)));
+    o.misread = (1.0 - in->open_wrong) * in->misread * density;
+    o.log_misread = log(o.misread);
+    o.log_no_path = log(in->open_wrong * density);
+    return o;
+}
+
+double log_open_with_path(const struct instrument_model *in)
+{
+    return log(in->open_wrong);
+}
+
+double log_mixture(const struct observation *o, double mean, double *weight, double *z)
+{
+    double distance = (o->ohms - mean) / o->sigma;
+    double log_normal = o->log_peak - 0.5 * distance * distance;
+    /* log(e^a + e^b) without overflow: take the larger out. */
+    double larger = fmax(log_normal, o->log_misread);
+    double sum = larger + log1p(exp(-fabs(log_normal - o->log_misread)));
+    if (weight != NULL)
+        *weight = 1.0 / (1.0 + exp(o->log_misread - log_normal));
+    if (z != NULL)
+        *z = distance;
+    return sum;
+}

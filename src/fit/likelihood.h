@@ -1,0 +1,44 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef FIT_LIKELIHOOD_H
+#define FIT_LIKELIHOOD_H
+
+/*
+ * How probable a reading is when the meter ought to show `mean`: normal with the instrument's
+ * noise, or now and then a misread, or over range though it should not be.
+ */
+
+#include "job/job.h"
+#include "models/models.h"
+
+#include <stdbool.h>
+#include <stddef.h>
+
+/* What of a reading's likelihood does not depend on the mean. */
+struct observation {
+    size_t measurement; /* index into the list of what is measured */
+    bool open;
+    double ohms;        /* Ω, as read */
+    double sigma;       /* Ω, the noise at that reading */
+    double log_peak;    /* log of 0.999 · 0.99 · the normal's peak */
+    double misread;     /* 0.999 · 0.01 · U(y) */
+    double log_misread; /* its log */
+    double log_no_path; /* the log-likelihood where there is no path */
+};
+
+/* σ(y), Ω: floor, share of the reading, and the display's step. */
+double instrument_sigma(const struct instrument_model *instrument, double ohms);
+
+/* U(y), 1/Ω: the density of misreads. */
+double instrument_misread_density(const struct instrument_model *instrument, double ohms);
+
+struct observation observe(const struct reading *reading, size_t measurement,
+                           const struct instrument_model *instrument);
+
+/* Log-likelihood of a reading over range where a path exists. */
+double log_open_with_path(const struct instrument_model *instrument);
+
+/* Log-likelihood of a finite reading with a path. `weight` (may be NULL) gets the chance that it is
+ * not a misread; `z` (may be NULL) its distance from the mean in σ. */
+double log_mixture(const struct observation *observation, double mean, double *weight, double *z);
+
+#endif
