@@ -104,7 +104,8 @@ struct fault_family {
      * nothing. A family without members on this job drops out of the priors. */
     void (*enumerate)(const struct rf_job *job, const struct rf_models *models,
                       fault_callback *callback, void *context);
-    /* The kind, an index into the models' row of kinds by `kind_names`; NULL: one kind. */
+    /* The kind, an index into `kind_names`, under which name the models' row has its share
+     * (`fault_kind_share`); NULL: one kind. */
     size_t (*kind)(const struct fault *fault);
     const char *const *kind_names; /* n_kinds of them; NULL: one kind */
     size_t n_kinds;
@@ -119,8 +120,9 @@ struct fault_family {
                   const struct rf_models *models, look_callback *callback, void *context);
     const char *const *share_names; /* the shares its row in effort.json must have; n_shares */
     size_t n_shares;
-    /* The danger if re-energised; NULL: none. */
-    enum danger (*danger)(const struct fault *fault);
+    /* The danger if re-energised; NULL: none. A break on a spur is another than on the ring, so it
+     * takes the job. */
+    enum danger (*danger)(const struct fault *fault, const struct rf_job *job);
     /* In words, with its place ("high-resistance neutral joint in the run P3 to P4"); and without
      * ("high-resistance neutral joint"), so that faults which differ only in the place have the
      * same words. Both mandatory. No capital at the start, no full stop. */
@@ -140,6 +142,19 @@ const struct fault_family *fault_family_find(const char *name);
 
 bool fault_equal(const struct fault *one, const struct fault *other);
 bool fault_has_parameter(const struct fault *fault);
+
+/* The share of the family's prior that goes to this fault's kind, by its name in the models' row;
+ * 1 where the family has one kind. */
+double fault_kind_share(const struct fault *fault, const struct family_prior *row);
+
+/* The family's own, or nothing where its callback is NULL. */
+void fault_looks(const struct fault *fault, const struct rf_job *job,
+                 const struct rf_models *models, look_callback *callback, void *context);
+enum danger fault_danger(const struct fault *fault, const struct rf_job *job);
+
+/* Checks the models' rows against the list: a row for every family and for nothing else, its kinds
+ * and shares named as the family knows them, a parameter exactly where it has one. RF_REFUSED. */
+enum rf_status fault_check_models(const struct rf_models *models, struct rf_error *error);
 
 /* Applies the faults in order to a copy of the recorded ring; each one's parameter, if it has one,
  * is appended to the wiring's. parameter_of[i] (may be NULL) gets fault i's, or NO_PARAMETER. */
