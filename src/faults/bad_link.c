@@ -27,7 +27,7 @@ static void enumerate(const struct rf_job *job, const struct rf_models *models,
 
 static size_t kind(const struct fault *fault)
 {
-    return fault->open ? 1 : 0;
+    return fault->open ? 0 : 1;
 }
 
 static bool has_parameter(const struct fault *fault)
@@ -52,10 +52,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)fault;
     (void)job;
-    (void)models;
-    look_board(1, callback, context);
+    look_board(place_share(fault, models), callback, context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -72,7 +70,7 @@ static void describe(const struct fault *fault, const struct rf_job *job, struct
     describe_kind(fault, out);
 }
 
-static const char *const kind_names_of_link[] = {"high", "open"};
+static const char *const kind_names_of_link[] = {"open", "high"};
 
 const struct fault_family fault_family_bad_link = {
     .name = "bad_link",
@@ -85,6 +83,8 @@ const struct fault_family fault_family_bad_link = {
     .has_parameter = has_parameter,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
 };

@@ -18,7 +18,7 @@ static void enumerate(const struct rf_job *job, const struct rf_models *models,
 
 static size_t kind(const struct fault *fault)
 {
-    return fault->open ? 1 : 0;
+    return fault->open ? 0 : 1;
 }
 
 static bool has_parameter(const struct fault *fault)
@@ -38,8 +38,7 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)models;
-    look_open(job, fault->place, 1, callback, context);
+    look_open(job, fault->place, place_share(fault, models), callback, context);
 }
 
 /* An open contact carries nothing, but what is plugged in has then no protective conductor. */
@@ -68,7 +67,7 @@ static void describe(const struct fault *fault, const struct rf_job *job, struct
     text_add(out, state_word(fault));
 }
 
-static const char *const kind_names_of_contact[] = {"high", "open"};
+static const char *const kind_names_of_contact[] = {"open", "high"};
 
 const struct fault_family fault_family_contact = {
     .name = "contact",
@@ -81,6 +80,8 @@ const struct fault_family fault_family_contact = {
     .has_parameter = has_parameter,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .danger = danger,
     .describe = describe,
     .describe_kind = describe_kind,

@@ -2,8 +2,8 @@
 #include "faults/pieces.h"
 #include "faults/places.h"
 
-/* A joint in all three conductors is accepted where somebody found one, but not enumerated: three
- * bad joints at once are rare, and a break of the whole cable stands for them. */
+/* A joint in all three conductors (one strip of connectors, say) is accepted where somebody found
+ * one, but is no hypothesis of its own. */
 static void enumerate(const struct rf_job *job, const struct rf_models *models,
                       fault_callback *callback, void *context)
 {
@@ -22,8 +22,8 @@ static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
     const struct family_prior *row = models_family(models, fault->family->name);
-    look_along_run(job, fault->run, family_share(row, "end"), family_share(row, "inside"),
-                   callback, context);
+    look_along_run(job, fault->run, family_share(row, "end"), family_share(row, "inside"), callback,
+                   context);
 }
 
 /* A CPC carries no load, so its joint does not heat. */

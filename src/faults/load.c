@@ -22,8 +22,7 @@ static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
     (void)job;
-    (void)models;
-    look_check(fault->place, 1, callback, context);
+    look_check(fault->place, place_share(fault, models), callback, context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -45,6 +44,8 @@ const struct fault_family fault_family_load = {
     .enumerate = enumerate,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
     .span = span_point,

@@ -23,9 +23,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)models;
-    look_open(job, fault->place, 1, callback, context);
-    look_open(job, fault->other, 1, callback, context);
+    look_open(job, fault->place, place_share(fault, models), callback, context);
+    look_open(job, fault->other, place_share(fault, models), callback, context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -50,6 +49,8 @@ const struct fault_family fault_family_parallel = {
     .enumerate = enumerate,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
 };

@@ -4,7 +4,7 @@
 void pieces_take_out(struct wiring *wiring, size_t run, enum conductor conductor)
 {
     struct wire *wire;
-    for (size_t next = 0; (wire = wiring_run_wires(wiring, run, conductor, &next)) != NULL;)
+    for (size_t next = 0; (wire = wiring_next_piece(wiring, run, conductor, &next)) != NULL;)
         wire->a = -1;
 }
 
@@ -12,7 +12,7 @@ void pieces_take_out(struct wiring *wiring, size_t run, enum conductor conductor
 static bool goes_on(struct wiring *wiring, size_t run, enum conductor conductor, int node)
 {
     const struct wire *wire;
-    for (size_t next = 0; (wire = wiring_run_wires(wiring, run, conductor, &next)) != NULL;)
+    for (size_t next = 0; (wire = wiring_next_piece(wiring, run, conductor, &next)) != NULL;)
         if (wire->a == node)
             return true;
     return false;
@@ -21,7 +21,7 @@ static bool goes_on(struct wiring *wiring, size_t run, enum conductor conductor,
 struct wire *pieces_far_end(struct wiring *wiring, size_t run, enum conductor conductor)
 {
     struct wire *wire;
-    for (size_t next = 0; (wire = wiring_run_wires(wiring, run, conductor, &next)) != NULL;)
+    for (size_t next = 0; (wire = wiring_next_piece(wiring, run, conductor, &next)) != NULL;)
         if (wire->a >= 0 && !goes_on(wiring, run, conductor, wire->b))
             return wire;
     return NULL;

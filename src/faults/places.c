@@ -51,6 +51,13 @@ void enumerate_front_pairs(const struct fault_family *family, const struct rf_jo
 
 /* --- looks --- */
 
+const char *const place_shares[1] = {"place"};
+
+double place_share(const struct fault *fault, const struct rf_models *models)
+{
+    return family_share(models_family(models, fault->family->name), place_shares[0]);
+}
+
 void look_board(double share, look_callback *callback, void *context)
 {
     struct look look = {.kind = LOOK_OPEN, .where = LOOK_AT_BOARD, .share = share};
@@ -64,15 +71,13 @@ void look_open(const struct rf_job *job, size_t place, double share, look_callba
         look_board(share, callback, context);
         return;
     }
-    struct look look = {
-        .kind = LOOK_OPEN, .where = LOOK_AT_PLACE, .index = place, .share = share};
+    struct look look = {.kind = LOOK_OPEN, .where = LOOK_AT_PLACE, .index = place, .share = share};
     callback(context, &look);
 }
 
 void look_check(size_t place, double share, look_callback *callback, void *context)
 {
-    struct look look = {
-        .kind = LOOK_CHECK, .where = LOOK_AT_PLACE, .index = place, .share = share};
+    struct look look = {.kind = LOOK_CHECK, .where = LOOK_AT_PLACE, .index = place, .share = share};
     callback(context, &look);
 }
 
@@ -82,8 +87,7 @@ void look_along_run(const struct rf_job *job, size_t run, double end, double ins
     look_open(job, run_near_end(job, run), end, callback, context);
     look_open(job, run_far_end(run), end, callback, context);
     if (inside > 0) {
-        struct look look = {
-            .kind = LOOK_OPEN, .where = LOOK_IN_RUN, .index = run, .share = inside};
+        struct look look = {.kind = LOOK_OPEN, .where = LOOK_IN_RUN, .index = run, .share = inside};
         callback(context, &look);
     }
 }

@@ -21,6 +21,10 @@ void enumerate_runs(const struct fault_family *family, const struct rf_job *job,
 void enumerate_front_pairs(const struct fault_family *family, const struct rf_job *job,
                            fault_callback *callback, void *context);
 
+/* The shares of a family that shows at a place and nowhere else, and that share. */
+extern const char *const place_shares[1];
+double place_share(const struct fault *fault, const struct rf_models *models);
+
 /* Opening a place; an end of the ring is the board. */
 void look_open(const struct rf_job *job, size_t place, double share, look_callback *callback,
                void *context);

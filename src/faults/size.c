@@ -15,9 +15,8 @@ static void enumerate(const struct rf_job *job, const struct rf_models *models,
 {
     for (size_t i = 0; i < models->n_cables; i++) {
         const struct cable_row *cable = &models->cables[i];
-        struct fault fault = {.family = &fault_family_size,
-                              .live_mm2 = cable->live_mm2,
-                              .cpc_mm2 = cable->cpc_mm2};
+        struct fault fault = {
+            .family = &fault_family_size, .live_mm2 = cable->live_mm2, .cpc_mm2 = cable->cpc_mm2};
         if (!is_recorded(job, cable) && !callback(context, &fault))
             return;
     }
@@ -34,10 +33,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)fault;
-    (void)models;
     for (size_t place = 1; place <= job->n_ring; place++)
-        look_open(job, place, 1, callback, context);
+        look_open(job, place, place_share(fault, models), callback, context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -61,6 +58,8 @@ const struct fault_family fault_family_size = {
     .enumerate = enumerate,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
 };

@@ -46,8 +46,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)models;
-    look_open(job, fault->chain[fault->chain_length - 1], 1, callback, context);
+    look_open(job, fault->chain[fault->chain_length - 1], place_share(fault, models), callback,
+              context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -92,6 +92,8 @@ const struct fault_family fault_family_spur = {
     .n_kinds = CHAIN_MAX,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
     .span = span,

@@ -7,9 +7,8 @@ static void enumerate(const struct rf_job *job, const struct rf_models *models,
     (void)models;
     for (size_t place = next_front(job, 0); place < job->n_places; place = next_front(job, place))
         for (int poles = POLES_L; poles <= POLES_LN; poles++) {
-            struct fault fault = {.family = &fault_family_switched_off,
-                                  .place = place,
-                                  .poles = (enum poles)poles};
+            struct fault fault = {
+                .family = &fault_family_switched_off, .place = place, .poles = (enum poles)poles};
             if (!callback(context, &fault))
                 return;
         }
@@ -28,8 +27,7 @@ static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
     (void)job;
-    (void)models;
-    look_check(fault->place, 1, callback, context);
+    look_check(fault->place, place_share(fault, models), callback, context);
 }
 
 static void describe_kind(const struct fault *fault, struct text *out)
@@ -51,6 +49,8 @@ const struct fault_family fault_family_switched_off = {
     .enumerate = enumerate,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .describe = describe,
     .describe_kind = describe_kind,
     .span = span_point,

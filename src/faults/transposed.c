@@ -21,10 +21,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 {
     (void)median;
     (void)parameter;
-    struct wire *first =
-        pieces_far_end(wiring, fault->run, pair_members[fault->pair].first);
-    struct wire *second =
-        pieces_far_end(wiring, fault->run, pair_members[fault->pair].second);
+    struct wire *first = pieces_far_end(wiring, fault->run, pair_members[fault->pair].first);
+    struct wire *second = pieces_far_end(wiring, fault->run, pair_members[fault->pair].second);
     if (first == NULL || second == NULL)
         return;
     int kept = first->b;

@@ -34,10 +34,8 @@ static void apply(const struct fault *fault, struct wiring *wiring, double media
 static void looks(const struct fault *fault, const struct rf_job *job,
                   const struct rf_models *models, look_callback *callback, void *context)
 {
-    (void)fault;
     (void)job;
-    (void)models;
-    look_board(1, callback, context);
+    look_board(place_share(fault, models), callback, context);
 }
 
 static enum danger danger(const struct fault *fault, const struct rf_job *job)
@@ -64,6 +62,8 @@ const struct fault_family fault_family_wrong_leg = {
     .enumerate = enumerate,
     .apply = apply,
     .looks = looks,
+    .share_names = place_shares,
+    .n_shares = 1,
     .danger = danger,
     .describe = describe,
     .describe_kind = describe_kind,
