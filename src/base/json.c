@@ -178,27 +178,34 @@ static void add_position(const char *bytes, size_t offset, const char *source,
     text_addf(out, ":%zu: ", column);
 }
 
-/* The character at an offset, for a message. */
-static void add_character(const char *bytes, size_t length, size_t offset, struct text *out)
+static bool is_of_word(char byte)
 {
-    char character[8] = {0};
+    return (byte >= 'a' && byte <= 'z') || (byte >= 'A' && byte <= 'Z') ||
+           (byte >= '0' && byte <= '9') || byte == '+' || byte == '-' || byte == '.';
+}
+
+/* The character at an offset, or the word, number or escape that begins there, for a message. */
+static void add_found(const char *bytes, size_t length, size_t offset, struct text *out)
+{
+    char found[24] = {0};
+    size_t size = 1;
     if (offset >= length) {
         text_add(out, "the text's end");
-        return;
-    }
-    if (bytes[offset] == '\n' || bytes[offset] == '\r') {
+    } else if (bytes[offset] == '\n' || bytes[offset] == '\r') {
         text_add(out, "the line's end");
-        return;
-    }
-    if (bytes[offset] == '\0') {
+    } else if (bytes[offset] == '\0') {
         text_add(out, "a NUL byte");
-        return;
+    } else {
+        if (is_of_word(bytes[offset]) || bytes[offset] == '\\')
+            while (offset + size < length && size < 20 && is_of_word(bytes[offset + size]))
+                size++;
+        else
+            while (offset + size < length && size < 4 &&
+                   ((unsigned char)bytes[offset + size] & 0xC0) == 0x80)
+                size++;
+        memcpy(found, bytes + offset, size);
+        add_quoted(found, out);
     }
-    size_t size = 1;
-    while (size < 4 && offset + size < length && ((unsigned char)bytes[offset + size] & 0xC0) == 0x80)
-        size++;
-    memcpy(character, bytes + offset, size);
-    add_quoted(character, out);
 }
 
 static enum rf_status check_text(const char *bytes, size_t length, const char *source,
@@ -218,7 +225,7 @@ static enum rf_status check_text(const char *bytes, size_t length, const char *s
         return RF_OK;
     add_position(bytes, scan.bad, source, lines, &text);
     text_add(&text, "found ");
-    add_character(bytes, length, scan.bad, &text);
+    add_found(bytes, length, scan.bad, &text);
     text_addf(&text, "; needs %s", scan.needs);
     return fail_text(error, RF_SYNTAX, &text);
 }

@@ -111,7 +111,8 @@ size_t job_find_run(const struct rf_job *job, size_t one, size_t other);
 /* The key of a reading's spot in the file: "board", "P3" … */
 const char *reading_key(const struct rf_job *job, const struct reading *reading);
 
-/* Words for a message: "out, in and P1 to P8", "P1, kitchen and S1", shortened past `most` ids. */
+/* The ids of the ring's points, and of its spurs unless `ring_only`, for a message: "P1 to P8",
+ * "P1, kitchen and P3", "P1 to P8, and the spurs S1 and S2". Long lists are shortened. */
 struct text;
 void job_list_places(const struct rf_job *job, bool ring_only, struct text *out);
 
