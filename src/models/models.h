@@ -11,6 +11,7 @@
 
 #include <ringfettle/models.h>
 
+#include <stdbool.h>
 #include <stddef.h>
 
 enum { MODELS_MAX_SIZES = 16, MODELS_MAX_CABLES = 16, MODELS_MAX_FAMILIES = 32, MODELS_MAX_KINDS = 4 };
@@ -54,6 +55,7 @@ struct family_prior {
         double share;     /* of the family's prior, if all kinds are present */
     } kinds[MODELS_MAX_KINDS];
     struct lognormal parameter;
+    bool metres; /* the parameter is in m, not Ω */
     size_t n_shares; /* effort.json: where the defect shows, by names the family knows */
     struct {
         const char *name; /* "end", "inside", "point" … */
@@ -82,10 +84,12 @@ struct rf_models {
     double unknown_cpc_mm2;          /* 1.5 */
     double unknown_cpc_sigma;        /* 0.7 of the log */
     struct instrument_model instrument;
+    double archive_none; /* share of `none` among filed jobs, whatever rates were asked for */
     size_t n_families;
     struct family_prior families[MODELS_MAX_FAMILIES];
     struct effort_model effort;
     char *strings; /* owns the names above, or NULL */
+    size_t strings_used;
 };
 
 /* Ω/m of one conductor at `temperature_c`; NAN for a size that is not in the table.
