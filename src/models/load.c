@@ -41,8 +41,8 @@ static enum rf_status read_file(struct source *source, struct rf_error *error)
 }
 
 /* The file's text, shipped where `directory` is NULL. */
-static enum rf_status get_source(enum model_file file, const char *directory,
-                                 struct source *source, struct rf_error *error)
+static enum rf_status get_source(enum model_file file, const char *directory, struct source *source,
+                                 struct rf_error *error)
 {
     const struct shipped_file *shipped = &shipped_files[file];
     if (directory == NULL) {
@@ -90,8 +90,8 @@ static enum rf_status read_source(enum model_file file, const struct source *sou
 {
     cJSON *tree = NULL;
     const char *bytes = source->bytes.bytes == NULL ? "" : source->bytes.bytes;
-    enum rf_status status = json_parse(bytes, source->bytes.length, source->name.bytes,
-                                       JSON_DOCUMENT, &tree, error);
+    enum rf_status status =
+        json_parse(bytes, source->bytes.length, source->name.bytes, JSON_DOCUMENT, &tree, error);
     if (status != RF_OK)
         return status;
     struct json_at document = json_document(tree, source->name.bytes);

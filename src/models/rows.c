@@ -12,9 +12,8 @@ static const char share_needs[] = "a share above 0, at most 1";
 static const char size_needs[] = "a size in mm² from 0.1 to 1000";
 
 /* Member `key` of a row; missing where it must not be is the checked reader's to refuse. */
-static enum rf_status number_of(const struct json_at *row, const char *key, double low,
-                                double high, const char *needs, double *number,
-                                struct rf_error *error)
+static enum rf_status number_of(const struct json_at *row, const char *key, double low, double high,
+                                const char *needs, double *number, struct rf_error *error)
 {
     struct json_at member = json_member(row, key);
     return json_number(&member, low, high, needs, number, error);
@@ -42,8 +41,8 @@ static enum rf_status read_size(const struct json_at *row, struct rf_models *mod
     if (status == RF_OK)
         status = number_of(row, "mm2", 0.1, 1000, size_needs, &size.mm2, error);
     if (status == RF_OK)
-        status = number_of(row, "ohm_per_km", 1e-3, 1000, "Ω/km from 0.001 to 1000", &ohm_per_km,
-                           error);
+        status =
+            number_of(row, "ohm_per_km", 1e-3, 1000, "Ω/km from 0.001 to 1000", &ohm_per_km, error);
     if (status != RF_OK)
         return status;
     size.ohm_per_m = ohm_per_km / 1000;
@@ -102,11 +101,11 @@ static enum rf_status read_parameter(const struct json_at *row, struct family_pr
         return RF_OK;
     }
     family->metres = metres.value != NULL;
-    enum rf_status status =
-        family->metres ? json_number(&metres, 0.1, 500, "metres from 0.1 to 500",
-                                     &family->parameter.median, error)
-                       : json_number(&ohm, 1e-4, 1e4, "ohms from 0.0001 to 10000",
-                                     &family->parameter.median, error);
+    enum rf_status status = family->metres
+                                ? json_number(&metres, 0.1, 500, "metres from 0.1 to 500",
+                                              &family->parameter.median, error)
+                                : json_number(&ohm, 1e-4, 1e4, "ohms from 0.0001 to 10000",
+                                              &family->parameter.median, error);
     if (status != RF_OK)
         return status;
     return json_number(&sigma, 0, 5, "a standard deviation of the log from 0 to 5",
@@ -127,8 +126,7 @@ static enum rf_status read_shares(const struct json_at *at, struct rf_models *mo
     enum rf_status status = json_object(at, NULL, 0, error);
     if (status != RF_OK)
         return status;
-    JSON_EACH(at, member, i)
-    {
+    JSON_EACH (at, member, i) {
         if (json_is_private(member.key))
             continue;
         if (*n == MODELS_MAX_KINDS)
@@ -177,7 +175,7 @@ static enum rf_status read_name(const struct json_at *row, const char **name,
 static enum rf_status read_family(const struct json_at *row, struct rf_models *models,
                                   struct rf_error *error)
 {
-    static const char *const keys[] = {"family", "prior", "ohm", "metres",
+    static const char *const keys[] = {"family", "prior", "ohm",  "metres",
                                        "sigma",  "kinds", "count"};
     struct family_prior family = {0};
     const char *name;
@@ -303,8 +301,7 @@ enum rf_status read_row_block(const struct json_at *document, const struct row_b
     status = json_array(&rows, 1, block->most, "a list of rows", error);
     if (status != RF_OK)
         return status;
-    JSON_EACH(&rows, row, i)
-    {
+    JSON_EACH (&rows, row, i) {
         status = block->read_row(&row, models, error);
         if (status != RF_OK)
             return status;

@@ -11,8 +11,8 @@ double models_ohm_per_m(const struct rf_models *models, double mm2, double tempe
     for (size_t i = 0; i < models->n_sizes; i++) {
         const struct conductor_row *row = &models->sizes[i];
         if (fabs(row->mm2 - mm2) <= 1e-9 * row->mm2)
-            return row->ohm_per_m * (1 + models->temperature_coefficient *
-                                             (temperature_c - REFERENCE_TEMPERATURE));
+            return row->ohm_per_m *
+                   (1 + models->temperature_coefficient * (temperature_c - REFERENCE_TEMPERATURE));
     }
     return NAN;
 }

@@ -34,8 +34,8 @@ END_TEST
  * t °C to 20 °C, copper. The annex rounds and takes a coefficient of its own, hence 0.003. */
 static const struct {
     double temperature_c, factor;
-} corrections[] = {{5, 1.064}, {10, 1.042}, {15, 1.020}, {20, 1}, {25, .980}, {30, .962},
-                   {40, .926}};
+} corrections[] = {{5, 1.064}, {10, 1.042}, {15, 1.020}, {20, 1},
+                   {25, .980}, {30, .962},  {40, .926}};
 
 START_TEST(temperature_factors_are_those_of_iec_60228)
 {
