@@ -107,6 +107,11 @@ const struct forward *fitter_forward(const struct fitter *f)
     return f->forward;
 }
 
+struct forward *fitter_forward_to_use(struct fitter *f)
+{
+    return f->forward;
+}
+
 size_t fitter_observations(const struct fitter *f, const struct observation **observations)
 {
     *observations = f->observations;

@@ -28,6 +28,8 @@ void fitter_destroy(struct fitter *fitter); /* takes NULL */
 /* The measurements the job's readings are values of, each once; readings of the job, in its order,
  * as observations. */
 const struct forward *fitter_forward(const struct fitter *fitter);
+/* The same, for others to analyse and evaluate wirings with between fits. */
+struct forward *fitter_forward_to_use(struct fitter *fitter);
 size_t fitter_observations(const struct fitter *fitter, const struct observation **observations);
 
 /* What a fit found. Pointers are into the fitter, good until its next fit. */

@@ -1,0 +1,200 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "base/cholesky.h"
+#include "base/error.h"
+#include "base/memory.h"
+#include "diagnosis/steps.h"
+
+#include <math.h>
+#include <string.h>
+
+/*
+ * Which kinds of fault could these readings not have shown? Take the ring without a fault, as the
+ * best fit has it, and put each fault in at its median: the readings move by δ (in σ of their
+ * noise). What lengths, cable and instrument could explain as well does not count, so what is left
+ * is δᵀ(I + JJᵀ)⁻¹δ = |δ|² − uᵀ(I + JᵀJ)⁻¹u with u = Jᵀδ (Woodbury): twice the log of the odds the
+ * readings would give against "no fault". A kind is listed when the better part of its members
+ * stays below `shows`.
+ */
+static const double shows = 9.0;
+static const double better_part = 0.5;
+
+struct sight {
+    const struct rf_diagnosis *diagnosis;
+    const struct observation *observations;
+    size_t n, d;         /* readings; parameters of the recorded ring */
+    double *mean;        /* [reading] Ω, of the ring without fault; NAN: over range */
+    double *sigma;       /* [reading] Ω */
+    double *jacobian;    /* n × d, in σ */
+    double *factor;      /* d × d, of I + JᵀJ */
+    double *delta, *u;   /* [reading], [parameter] */
+    double *theta;       /* [parameter, with faults'] */
+    struct wiring wiring;
+};
+
+static void finish_sight(struct sight *s)
+{
+    free(s->mean);
+    free(s->sigma);
+    free(s->jacobian);
+    free(s->factor);
+    free(s->delta);
+    free(s->u);
+    free(s->theta);
+    wiring_finish(&s->wiring);
+}
+
+static enum rf_status init_sight(struct sight *s, const struct rf_diagnosis *diagnosis,
+                                 const struct fitter *fitter, struct rf_error *error)
+{
+    s->diagnosis = diagnosis;
+    s->n = fitter_observations(fitter, &s->observations);
+    s->d = (size_t)diagnosis->ring.map.n_common;
+    s->mean = NEW_ARRAY(double, s->n);
+    s->sigma = NEW_ARRAY(double, s->n);
+    s->jacobian = NEW_ARRAY(double, s->n * s->d);
+    s->factor = NEW_ARRAY(double, s->d * s->d);
+    s->delta = NEW_ARRAY(double, s->n);
+    s->u = NEW_ARRAY(double, s->d);
+    s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
+    if (s->mean == NULL || s->sigma == NULL || s->jacobian == NULL || s->factor == NULL ||
+        s->delta == NULL || s->u == NULL || s->theta == NULL)
+        return fail_memory(error);
+    memcpy(s->theta, diagnosis->ranked[0].theta, s->d * sizeof *s->theta);
+    return wiring_init(&s->wiring, diagnosis->job, diagnosis->models, error);
+}
+
+/* Means, noise and whitened Jacobian of the ring without a fault; factors I + JᵀJ. */
+static bool look_at_ring(struct sight *s, struct forward *forward)
+{
+    if (forward_analyse(forward, &s->wiring) != RF_OK ||
+        forward_evaluate(forward, s->theta) != RF_OK)
+        return false;
+    memset(s->factor, 0, s->d * s->d * sizeof *s->factor);
+    for (size_t j = 0; j < s->d; j++)
+        s->factor[j * s->d + j] = 1.0;
+    for (size_t i = 0; i < s->n; i++) {
+        size_t m = s->observations[i].measurement;
+        double *row = s->jacobian + i * s->d;
+        s->mean[i] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;
+        if (isnan(s->mean[i]))
+            continue;
+        s->sigma[i] = instrument_sigma(&s->diagnosis->models->instrument, s->mean[i]);
+        for (size_t j = 0; j < s->d; j++)
+            row[j] = forward_gradient(forward, m)[j] / s->sigma[i];
+        for (size_t j = 0; j < s->d; j++)
+            for (size_t k = 0; k <= j; k++)
+                s->factor[j * s->d + k] += row[j] * row[k];
+    }
+    return cholesky_factor(s->factor, s->d, s->d);
+}
+
+/* What is left of δ when the ring's own parameters have explained what they can. */
+static double unexplained(struct sight *s)
+{
+    double square = 0.0, explained = 0.0;
+    memset(s->u, 0, s->d * sizeof *s->u);
+    for (size_t i = 0; i < s->n; i++) {
+        square += s->delta[i] * s->delta[i];
+        for (size_t j = 0; j < s->d && s->delta[i] != 0.0; j++)
+            s->u[j] += s->jacobian[i * s->d + j] * s->delta[i];
+    }
+    cholesky_half_solve(s->factor, s->d, s->d, s->u);
+    for (size_t j = 0; j < s->d; j++)
+        explained += s->u[j] * s->u[j];
+    return square - explained;
+}
+
+/* Whether the fault, at its median, would have shown. RF_NUMERICAL. */
+static enum rf_status would_show(struct sight *s, struct forward *forward,
+                                 const struct hypothesis *hypothesis, bool *seen)
+{
+    wiring_copy(&s->wiring, &s->diagnosis->ring);
+    hypothesis_apply(hypothesis, &s->wiring, NULL);
+    if (forward_analyse(forward, &s->wiring) != RF_OK ||
+        forward_evaluate(forward, s->theta) != RF_OK)
+        return RF_NUMERICAL;
+    *seen = false;
+    for (size_t i = 0; i < s->n; i++) {
+        size_t m = s->observations[i].measurement;
+        bool path = forward_reachable(forward, m);
+        if (path == isnan(s->mean[i])) { /* a path lost or made */
+            *seen = true;
+            return RF_OK;
+        }
+        s->delta[i] = path ? (forward_mean(forward, m) - s->mean[i]) / s->sigma[i] : 0.0;
+    }
+    *seen = unexplained(s) > shows;
+    return RF_OK;
+}
+
+struct kind_count {
+    const struct fault *example; /* an unseen member if there is one */
+    size_t members, unseen;
+};
+
+static struct kind_count *count_kind(struct kind_count *kinds, size_t *n,
+                                     const struct fault *fault)
+{
+    for (size_t k = 0; k < *n; k++)
+        if (fault_same_kind(kinds[k].example, fault))
+            return &kinds[k];
+    kinds[*n] = (struct kind_count){.example = fault};
+    return &kinds[(*n)++];
+}
+
+static bool tell_kind(struct rf_diagnosis *diagnosis, const struct kind_count *kind)
+{
+    struct blind_spot *spot = &diagnosis->blind[diagnosis->n_blind++];
+    struct text words = {0};
+    spot->example = *kind->example;
+    spot->share = (double)kind->unseen / (double)kind->members;
+    kind->example->family->describe_kind(kind->example, &words);
+    if (kind->unseen < kind->members)
+        text_addf(&words, ", at %zu of %zu places", kind->unseen, kind->members);
+    spot->words = words.bytes;
+    return !words.failed && words.bytes != NULL;
+}
+
+static enum rf_status tell_blind_kinds(struct rf_diagnosis *diagnosis,
+                                       const struct kind_count *kinds, size_t n,
+                                       struct rf_error *error)
+{
+    diagnosis->blind = NEW_ARRAY(struct blind_spot, n);
+    bool ok = diagnosis->blind != NULL;
+    for (size_t k = 0; ok && k < n; k++)
+        if ((double)kinds[k].unseen >= better_part * (double)kinds[k].members)
+            ok = tell_kind(diagnosis, &kinds[k]);
+    return ok ? RF_OK : fail_memory(error);
+}
+
+enum rf_status seek_blind_spots(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
+                                struct fitter *fitter, struct rf_error *error)
+{
+    struct sight sight = {0};
+    struct forward *forward = fitter_forward_to_use(fitter);
+    struct kind_count *kinds = NEW_ARRAY(struct kind_count, candidates->n);
+    size_t n_kinds = 0;
+    enum rf_status status =
+        kinds == NULL ? fail_memory(error) : init_sight(&sight, diagnosis, fitter, error);
+    if (status == RF_OK && !look_at_ring(&sight, forward))
+        status = fail(error, RF_NUMERICAL, "%s: the recorded ring's readings cannot be computed",
+                      diagnosis->job->source);
+    for (size_t i = 0; i < candidates->n && status == RF_OK; i++) {
+        const struct hypothesis *hypothesis = &candidates->list[i].hypothesis;
+        bool seen = false;
+        if (hypothesis->n_faults != 1)
+            continue;
+        status = would_show(&sight, forward, hypothesis, &seen);
+        struct kind_count *kind = count_kind(kinds, &n_kinds, &hypothesis->faults[0]);
+        kind->members++;
+        if (!seen && kind->unseen++ == 0)
+            kind->example = &hypothesis->faults[0];
+    }
+    for (size_t i = 0; i < sight.n && status == RF_OK; i++)
+        diagnosis->sound[i] = sight.mean[i];
+    if (status == RF_OK)
+        status = tell_blind_kinds(diagnosis, kinds, n_kinds, error);
+    finish_sight(&sight);
+    free(kinds);
+    return status;
+}

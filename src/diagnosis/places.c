@@ -1,0 +1,81 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "base/error.h"
+#include "base/memory.h"
+#include "diagnosis/steps.h"
+
+/* Chances added up over everything that would show at a place, and what would hurt. */
+
+const char *const danger_words[N_DANGERS] = {
+    [DANGER_CPC_BROKEN] = "the CPC is broken: metalwork beyond could become live and stay so",
+    [DANGER_LINE_ON_CPC] = "line and CPC are changed over or touch: earthed metal could become live",
+    [DANGER_LIVES_SHORTED] = "live conductors touch: a short circuit as soon as it is energised",
+    [DANGER_REVERSED] = "line and neutral are changed over: live parts stay live when switched off",
+    [DANGER_RING_BROKEN] = "the ring is broken: a 32 A device would not protect the one leg left",
+    [DANGER_OTHER_CIRCUIT] = "another circuit is joined in: this one could be live while isolated",
+    [DANGER_HEAT] = "a poor joint or contact: it gets hot under load",
+};
+
+struct adding {
+    struct place_chance *open, *check, *run, *board; /* [place], [place], [run], one */
+    double confidence;
+};
+
+static void add_look(void *context, const struct look *look)
+{
+    struct adding *adding = context;
+    struct place_chance *entry = look->where == LOOK_AT_BOARD ? adding->board
+                                 : look->where == LOOK_IN_RUN ? &adding->run[look->index]
+                                 : look->kind == LOOK_OPEN    ? &adding->open[look->index]
+                                                              : &adding->check[look->index];
+    entry->look = *look;
+    entry->chance += adding->confidence * look->share;
+}
+
+static void add_hypothesis(struct adding *adding, struct rf_diagnosis *diagnosis,
+                           const struct candidate *candidate)
+{
+    bool counted[N_DANGERS] = {false};
+    adding->confidence = candidate->confidence;
+    for (size_t i = 0; i < candidate->hypothesis.n_faults; i++) {
+        const struct fault *fault = &candidate->hypothesis.faults[i];
+        fault_looks(fault, diagnosis->job, diagnosis->models, add_look, adding);
+        enum danger danger = fault_danger(fault, diagnosis->job);
+        diagnosis->dangers[danger].danger = danger;
+        if (!counted[danger])
+            diagnosis->dangers[danger].chance += candidate->confidence;
+        counted[danger] = true;
+    }
+}
+
+static int by_chance(const void *a, const void *b)
+{
+    const struct place_chance *one = a, *other = b;
+    if (one->chance != other->chance)
+        return one->chance > other->chance ? -1 : 1;
+    if (one->look.where != other->look.where)
+        return one->look.where < other->look.where ? -1 : 1;
+    return one->look.index < other->look.index ? -1 : one->look.index > other->look.index;
+}
+
+enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
+                             struct rf_error *error)
+{
+    size_t places = diagnosis->job->n_places, runs = n_runs(diagnosis->job);
+    size_t n = 2 * places + runs + 1;
+    diagnosis->places = NEW_ARRAY(struct place_chance, n);
+    if (diagnosis->places == NULL)
+        return fail_memory(error);
+    struct adding adding = {
+        .open = diagnosis->places,
+        .check = diagnosis->places + places,
+        .run = diagnosis->places + 2 * places,
+        .board = diagnosis->places + 2 * places + runs,
+    };
+    for (size_t i = 0; i < candidates->n; i++)
+        add_hypothesis(&adding, diagnosis, &candidates->list[i]);
+    qsort(diagnosis->places, n, sizeof *diagnosis->places, by_chance);
+    while (diagnosis->n_places < n &&
+           diagnosis->places[diagnosis->n_places].chance >= confidence_shown)
+        diagnosis->n_places++;
+    return RF_OK;
+}

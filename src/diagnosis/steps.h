@@ -1,0 +1,48 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef DIAGNOSIS_STEPS_H
+#define DIAGNOSIS_STEPS_H
+
+/* What the steps of a diagnosis hand one another; nothing outside the room includes this. */
+
+#include "diagnosis/diagnosis.h"
+
+/* A hypothesis compared. Logs of probabilities throughout; -INFINITY: impossible. */
+struct candidate {
+    struct hypothesis hypothesis;
+    double log_prior;
+    double log_looks; /* log of the share that opened and checked places have left of it */
+    double log_evidence;
+    double confidence; /* after ranking */
+};
+
+struct candidates {
+    struct candidate *list;
+    size_t n, capacity;
+};
+
+/* enumerate.c: every hypothesis the job allows, with its prior, in enumeration order. RF_MEMORY;
+ * RF_REFUSED where the models have no row for a family. The caller finishes it. */
+enum rf_status candidates_enumerate(struct candidates *candidates, const struct rf_job *job,
+                                    const struct rf_models *models, struct rf_error *error);
+void candidates_finish(struct candidates *candidates); /* takes zeroed */
+
+/* rank.c: fits each, sorts them best first (ties keep enumeration order) and makes the confidences
+ * sum to one. */
+enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
+                               const struct wiring *ring, struct rf_error *error);
+
+/* The steps after that. Each fills its part of the diagnosis. `best` is the fit of the first. */
+enum rf_status keep_ranked(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
+                           struct fitter *fitter, struct rf_error *error);
+enum rf_status test_misfit(struct rf_diagnosis *diagnosis, struct fitter *fitter,
+                           struct rf_error *error);
+enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
+                             struct rf_error *error);
+enum rf_status group_findings(struct rf_diagnosis *diagnosis, struct rf_error *error);
+enum rf_status seek_blind_spots(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
+                                struct fitter *fitter, struct rf_error *error);
+
+/* Whether two faults differ in nothing but the place. */
+bool fault_same_kind(const struct fault *one, const struct fault *other);
+
+#endif
