@@ -104,6 +104,12 @@ void hypothesis_apply(const struct hypothesis *hypothesis, struct wiring *wiring
 
 /* --- the models' rows against the list --- */
 
+/* Between the models' name and a file's: "shipped faults.json", "DIR/faults.json". */
+static char between_names(const struct rf_models *models)
+{
+    return strcmp(models->name, "shipped") == 0 ? ' ' : '/';
+}
+
 /* The names a family knows, of kinds or of shares, and those its row has. */
 struct names {
     const char *file, *what; /* "faults.json", "kinds" */
@@ -144,8 +150,9 @@ static enum rf_status check_names(const struct rf_models *models, const char *fa
     enum rf_status status =
         found.failed || known.failed
             ? fail_memory(error)
-            : fail(error, RF_REFUSED, "%s/%s: family %s: found the %s %s; right would be %s",
-                   models->name, names->file, family, names->what, found.bytes, known.bytes);
+            : fail(error, RF_REFUSED, "%s%c%s: family %s: found the %s %s; right would be %s",
+                   models->name, between_names(models), names->file, family, names->what,
+                   found.bytes, known.bytes);
     text_finish(&found);
     text_finish(&known);
     return status;
@@ -160,12 +167,13 @@ static enum rf_status check_parameter(const struct rf_models *models,
         return RF_OK;
     if (!wanted)
         return fail(error, RF_REFUSED,
-                    "%s/faults.json: family %s: found a parameter; right would be none",
-                    models->name, family->name);
+                    "%s%cfaults.json: family %s: found a parameter; right would be none",
+                    models->name, between_names(models), family->name);
     return fail(error, RF_REFUSED,
-                "%s/faults.json: family %s: no parameter; right would be its median in %s and "
+                "%s%cfaults.json: family %s: no parameter; right would be its median in %s and "
                 "its sigma",
-                models->name, family->name, family->ohms ? "ohms" : "metres");
+                models->name, between_names(models), family->name,
+                family->ohms ? "ohms" : "metres");
 }
 
 static enum rf_status check_row(const struct rf_models *models, const struct fault_family *family,
@@ -174,9 +182,9 @@ static enum rf_status check_row(const struct rf_models *models, const struct fau
     const struct family_prior *row = models_family(models, family->name);
     if (row == NULL)
         return fail(error, RF_REFUSED,
-                    "%s/faults.json: no row for the family %s; right would be one row for each "
+                    "%s%cfaults.json: no row for the family %s; right would be one row for each "
                     "family",
-                    models->name, family->name);
+                    models->name, between_names(models), family->name);
     struct names kinds = {.file = "faults.json",
                           .what = "kinds",
                           .known = family->kind_names,
@@ -209,9 +217,9 @@ enum rf_status fault_check_models(const struct rf_models *models, struct rf_erro
         for (size_t k = 0; k < n_fault_families && k < MODELS_MAX_FAMILIES; k++)
             names[k] = fault_families[k]->name;
         const char *nearest = text_nearest(name, names, n_fault_families);
-        return fail(error, RF_REFUSED, "%s/faults.json: there is no family \"%s\"%s%s",
-                    models->name, name, nearest != NULL ? "; nearest is " : "",
-                    nearest != NULL ? nearest : "");
+        return fail(error, RF_REFUSED, "%s%cfaults.json: there is no family \"%s\"%s%s",
+                    models->name, between_names(models), name,
+                    nearest != NULL ? "; nearest is " : "", nearest != NULL ? nearest : "");
     }
     for (size_t i = 0; i < n_fault_families; i++) {
         enum rf_status status = check_row(models, fault_families[i], error);
