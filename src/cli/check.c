@@ -61,10 +61,11 @@ const struct command command_check = {
     .name = "check",
     .summary = "read job files and say what is wrong in them",
     .operands = "JOB…",
-    .about = "Reads each job and diagnoses nothing. A job that would be refused is named on standard "
-             "error with the place in the file, what was found there and what would be right; for "
-             "any other a line on standard output says how much it holds.\n\n"
-             "JOB is a file of one job, or of one job a line; - reads standard input.",
+    .about =
+        "Reads each job and diagnoses nothing. A job that would be refused is named on standard "
+        "error with the place in the file, what was found there and what would be right; for "
+        "any other a line on standard output says how much it holds.\n\n"
+        "JOB is a file of one job, or of one job a line; - reads standard input.",
     .n_options = 1,
     .options = {{"models", "DIR", "take the models from DIR instead of those compiled in"}},
     .least = 1,

@@ -66,7 +66,7 @@ const char *option_value(const struct invocation *invocation, const char *name)
     for (size_t i = 0; i < command->n_options; i++)
         if (strcmp(command->options[i].name, name) == 0)
             return invocation->values[i];
-    assert(!"an option the command has");
+    assert(false); /* a name that is not in the command's table */
     return NULL;
 }
 

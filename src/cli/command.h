@@ -34,9 +34,9 @@ struct command {
     const char *about;    /* paragraphs for --help, parted by blank lines */
     size_t n_options;
     struct command_option options[OPTIONS_MAX];
-    size_t least;         /* operands needed */
-    int most;             /* operands taken, or SEVERAL */
-    const char *needs;    /* what is missing when there are too few: "a job file, …" */
+    size_t least;      /* operands needed */
+    int most;          /* operands taken, or SEVERAL */
+    const char *needs; /* what is missing when there are too few: "a job file, …" */
     /* Does it; complains about what fails, and answers the exit status. */
     enum rf_class (*run)(const struct invocation *invocation);
 };
@@ -44,7 +44,8 @@ struct command {
 /* A command with what it was given. */
 struct invocation {
     const struct command *command;
-    const char *values[OPTIONS_MAX]; /* as `options`; "" for one without argument; NULL: not given */
+    const char
+        *values[OPTIONS_MAX]; /* as `options`; "" for one without argument; NULL: not given */
     size_t n_operands;
     char *const *operands;
 };

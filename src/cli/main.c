@@ -61,9 +61,10 @@ static enum rf_class help(void)
                "Exit status: 0 done, whatever the verdict; 2 usage or input refused; 3 the "
                "arithmetic failed; 4 out of memory, or reading or writing failed.");
     text_add(&out, "\n");
-    wrap_words(&out, "", "",
-               "For circuits that are isolated, locked off and proved dead. The results guide where "
-               "to look and certify nothing.");
+    wrap_words(
+        &out, "", "",
+        "For circuits that are isolated, locked off and proved dead. The results guide where "
+        "to look and certify nothing.");
     return put_help(&out);
 }
 
@@ -161,8 +162,7 @@ static enum rf_class run_command(const struct command *command, int argc, char *
     if (invocation.n_operands < command->least)
         return complain_usage(command, "needs %s", command->needs);
     if (command->most != SEVERAL && invocation.n_operands > (size_t)command->most)
-        return complain_usage(command, "nothing to do with %s",
-                              invocation.operands[command->most]);
+        return complain_usage(command, "nothing to do with %s", invocation.operands[command->most]);
     return command->run(&invocation);
 }
 
