@@ -354,6 +354,46 @@ START_TEST(json_has_the_fields_of_the_table)
 }
 END_TEST
 
+static size_t allowed; /* allocations cJSON still gets */
+static long held;      /* and has not given back */
+
+static void *allocate_while_allowed(size_t size)
+{
+    if (allowed == 0)
+        return NULL;
+    allowed--;
+    held++;
+    return malloc(size);
+}
+
+static void give_back(void *bytes)
+{
+    held -= bytes != NULL ? 1 : 0;
+    free(bytes);
+}
+
+/* The process is the test's own, so cJSON's allocator may be replaced. */
+START_TEST(writing_survives_every_failed_allocation)
+{
+    struct small_ring ring;
+    lay_ring(&ring, 3);
+    enumerate_all(&ring.job);
+    cJSON_InitHooks(&(cJSON_Hooks){.malloc_fn = allocate_while_allowed, .free_fn = give_back});
+    for (size_t i = 0; i < members.n; i++) {
+        cJSON *written = NULL;
+        for (size_t most = 0; written == NULL; most++) {
+            ck_assert_uint_lt(most, 100);
+            allowed = most;
+            written = fault_to_json(&members.faults[i], &ring.job);
+            ck_assert(written != NULL || held == 0);
+        }
+        cJSON_Delete(written);
+        ck_assert_int_eq(held, 0);
+    }
+    cJSON_InitHooks(NULL);
+}
+END_TEST
+
 static const struct {
     const char *text, *says;
 } refusals[] = {
@@ -1142,6 +1182,7 @@ static Suite *faults_suite(void)
     tcase_add_unchecked_fixture(json, make_models, NULL);
     tcase_add_loop_test(json, members_come_back_from_json, 0, N_RINGS);
     tcase_add_test(json, json_has_the_fields_of_the_table);
+    tcase_add_test(json, writing_survives_every_failed_allocation);
     tcase_add_loop_test(json, wrong_faults_are_refused, 0, N_REFUSALS);
     tcase_add_test(json, spur_of_the_whole_ring_is_refused);
     tcase_add_test(json, found_is_a_set);
