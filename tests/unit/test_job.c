@@ -1,12 +1,14 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /*
  * Reading a job: what is refused, with the whole message, and what is taken. All jobs are invented.
+ * Linked with --wrap for the allocating calls, so that each can be made to fail in turn.
  */
 #include "base/text.h"
 #include "job/job.h"
 #include "job/job_write.h"
 
 #include <check.h>
+#include <cjson/cJSON.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -661,6 +663,35 @@ START_TEST(refuses_by_name)
 }
 END_TEST
 
+void *__real_malloc(size_t size);
+void *__real_calloc(size_t n, size_t size);
+void *__real_realloc(void *old, size_t size);
+void *__wrap_malloc(size_t size);
+void *__wrap_calloc(size_t n, size_t size);
+void *__wrap_realloc(void *old, size_t size);
+
+static size_t allocations, fail_at; /* the allocation that fails, from 1; 0: none */
+
+static bool refused(void)
+{
+    return ++allocations == fail_at;
+}
+
+void *__wrap_malloc(size_t size)
+{
+    return refused() ? NULL : __real_malloc(size);
+}
+
+void *__wrap_calloc(size_t n, size_t size)
+{
+    return refused() ? NULL : __real_calloc(n, size);
+}
+
+void *__wrap_realloc(void *old, size_t size)
+{
+    return refused() ? NULL : __real_realloc(old, size);
+}
+
 static struct rf_job *read_job(const char *text)
 {
     struct rf_error error = {0};
@@ -920,6 +951,37 @@ START_TEST(writes_what_it_read)
 }
 END_TEST
 
+/* Reads the text with the first, the second … allocation failing until one reading needs no more;
+ * every failure must be said and leave nothing behind. */
+static void fail_each_allocation(const char *text, enum rf_status at_last)
+{
+    enum rf_status status = RF_MEMORY;
+    cJSON_Hooks hooks = {__wrap_malloc, free}; /* cJSON's own calls are not wrapped */
+    cJSON_InitHooks(&hooks);
+    for (size_t n = 1; n < 10000 && status == RF_MEMORY; n++) {
+        struct rf_error error = {0};
+        struct rf_job *job;
+        allocations = 0;
+        fail_at = n;
+        status = rf_job_parse(text, strlen(text), "kitchen.json", &job, &error);
+        fail_at = 0;
+        ck_assert_int_eq(error.status, status);
+        ck_assert(status == RF_OK || job == NULL);
+        rf_job_destroy(job);
+    }
+    cJSON_InitHooks(NULL);
+    ck_assert_int_eq(status, at_last);
+}
+
+START_TEST(survives_failing_allocations)
+{
+    fail_each_allocation(full, RF_OK);
+    fail_each_allocation(READINGS("{\"cross_ln\": {\"P9\": 0.4}}"), RF_REFUSED);
+    fail_each_allocation(READINGS("{\"link_in_ln\": {\"in\": 0.4}}"), RF_REFUSED);
+    fail_each_allocation("{", RF_SYNTAX);
+}
+END_TEST
+
 int main(void)
 {
     Suite *suite = suite_create("job");
@@ -934,6 +996,7 @@ int main(void)
     tcase_add_test(all, refuses_too_many_bytes);
     tcase_add_test(all, lists_places);
     tcase_add_test(all, writes_what_it_read);
+    tcase_add_test(all, survives_failing_allocations);
     suite_add_tcase(suite, all);
 
     SRunner *runner = srunner_create(suite);
