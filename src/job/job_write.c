@@ -14,17 +14,21 @@ static bool is_container(const cJSON *value)
     return cJSON_IsObject(value) || cJSON_IsArray(value);
 }
 
+/* Whether objects stand in it, or in its children. */
+static bool holds_objects(const cJSON *value, int levels)
+{
+    for (const cJSON *child = value->child; child != NULL; child = child->next)
+        if (cJSON_IsObject(child) || (levels > 1 && holds_objects(child, levels - 1)))
+            return true;
+    return false;
+}
+
 static bool is_spread(const cJSON *value, size_t depth)
 {
-    if (!is_container(value) || depth >= SPREAD_DEPTH)
-        return false;
     if (depth == 0)
         return true;
-    size_t n = 0;
-    for (const cJSON *child = value->child; child != NULL; child = child->next, n++)
-        if (cJSON_IsObject(child))
-            return true;
-    return n > SHORT_MOST;
+    return depth < SPREAD_DEPTH &&
+           (holds_objects(value, 2) || cJSON_GetArraySize(value) > SHORT_MOST);
 }
 
 /* What is no container, as cJSON writes it. */
