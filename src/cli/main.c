@@ -14,6 +14,7 @@
 #include <unistd.h>
 
 static const struct command *const commands[] = {
+    &command_diagnose,
     &command_check,
 };
 

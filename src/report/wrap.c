@@ -17,6 +17,8 @@ static size_t next_character(const char *at, char shown[CHARACTER_BYTES + 1])
     bool control = bytes[0] < 0x20 || bytes[0] == 0x7F || (bytes[0] == 0xC2 && bytes[1] < 0xA0);
     if (control)
         strcpy(shown, "?");
+    if (strcmp(shown, "\u00A0") == 0)
+        strcpy(shown, " ");
     return n;
 }
 

@@ -9,7 +9,7 @@
 enum { REPORT_COLUMNS = 72 };
 
 /* Adds `words` filled into lines, the first behind `first`, the others behind `rest` (both
- * narrower than a line). White space parts words; control characters are shown as ?, since
+ * narrower than a line). White space parts words, but for the no-break space; control characters are shown as ?, since
  * what a file says must not steer the terminal; a word wider than a line is broken. */
 void wrap_words(struct text *out, const char *first, const char *rest, const char *words);
 

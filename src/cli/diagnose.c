@@ -1,0 +1,71 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/command.h"
+
+#include "diagnosis/diagnosis.h"
+#include "report/report.h"
+
+struct context {
+    const struct rf_models *models;
+    bool json;
+    size_t reported;
+};
+
+static enum rf_status one_job(void *context, const struct rf_job *job, struct rf_error *error)
+{
+    struct context *in = context;
+    struct rf_diagnosis *diagnosis = NULL;
+    enum rf_status status = rf_diagnose(job, in->models, &diagnosis, error);
+    if (status != RF_OK)
+        return status;
+    struct text out = {0};
+    if (in->json) {
+        report_json(diagnosis, NULL, &out);
+    } else {
+        if (in->reported > 0)
+            report_divider(&out);
+        report_text(diagnosis, NULL, &out);
+    }
+    in->reported++;
+    status = put(&out, error);
+    text_finish(&out);
+    rf_diagnosis_destroy(diagnosis);
+    return status;
+}
+
+static enum rf_class run(const struct invocation *invocation)
+{
+    struct rf_models *models = NULL;
+    enum rf_status status = load_models(invocation, &models);
+    if (status != RF_OK)
+        return rf_status_class(status);
+    struct context context = {
+        .models = models,
+        .json = option_value(invocation, "json") != NULL,
+    };
+    enum rf_class class = each_job(invocation, one_job, &context);
+    rf_models_destroy(models);
+    return class;
+}
+
+const struct command command_diagnose = {
+    .name = "diagnose",
+    .summary = "say what the readings of a job show, where, and with what confidence",
+    .operands = "JOB…",
+    .about =
+        "Compares every plausible defect and testing mistake with the readings and reports what "
+        "they show: what would be dangerous first, then what can be checked without a screw, "
+        "where to look, what the readings could not show, the readings beside what fits them, "
+        "and the figures for a schedule of test results.\n\n"
+        "JOB is a file of one job, or of one job a line; - reads standard input. A job that is "
+        "refused is named on standard error; the others are reported all the same.",
+    .n_options = 2,
+    .options =
+        {
+            {"json", NULL, "one JSON object a job, each on a line, instead of text"},
+            {"models", "DIR", "take the models from DIR instead of those compiled in"},
+        },
+    .least = 1,
+    .most = SEVERAL,
+    .needs = "a job file, or - for standard input",
+    .run = run,
+};

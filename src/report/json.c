@@ -1,0 +1,246 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "report/report.h"
+
+#include <cjson/cJSON.h>
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+
+/*
+ * The format ringfettle-diagnosis/1, object by object. `failed` of the writer stays true once
+ * memory was short; further additions do nothing, and the caller looks once at the end.
+ */
+struct writer {
+    const struct rf_diagnosis *diagnosis;
+    bool failed;
+};
+
+enum { OHM_DIGITS = 6 };
+
+/* --- adding --- */
+
+/* Takes the item over, whatever happens. */
+static void add(struct writer *writer, cJSON *object, const char *key, cJSON *item)
+{
+    if (item != NULL && object != NULL && cJSON_AddItemToObject(object, key, item))
+        return;
+    cJSON_Delete(item);
+    writer->failed = true;
+}
+
+static void append(struct writer *writer, cJSON *array, cJSON *item)
+{
+    if (item != NULL && array != NULL && cJSON_AddItemToArray(array, item))
+        return;
+    cJSON_Delete(item);
+    writer->failed = true;
+}
+
+static void add_number(struct writer *writer, cJSON *object, const char *key, double number)
+{
+    add(writer, object, key, cJSON_CreateNumber(number));
+}
+
+static void add_words(struct writer *writer, cJSON *object, const char *key, const char *words)
+{
+    add(writer, object, key, cJSON_CreateString(words));
+}
+
+/* An array, the object's; NULL once memory was short. */
+static cJSON *add_list(struct writer *writer, cJSON *object, const char *key)
+{
+    cJSON *list = cJSON_CreateArray();
+    add(writer, object, key, list);
+    return writer->failed ? NULL : list;
+}
+
+/* Ω, to as many digits as say something; NAN is over range. */
+static void add_ohms(struct writer *writer, cJSON *object, const char *key, double ohms)
+{
+    if (isnan(ohms)) {
+        add_words(writer, object, key, "open");
+        return;
+    }
+    char digits[32];
+    snprintf(digits, sizeof digits, "%.*g", OHM_DIGITS, ohms);
+    add_number(writer, object, key, strtod(digits, NULL));
+}
+
+/* --- faults, findings, places --- */
+
+static void add_estimate(struct writer *writer, cJSON *object, const char *ohms, const char *metres,
+                         const struct estimate *estimate)
+{
+    if (!estimate->known)
+        return;
+    cJSON *range = cJSON_CreateObject();
+    add_ohms(writer, range, "value", estimate->value);
+    add_ohms(writer, range, "low", estimate->low);
+    add_ohms(writer, range, "high", estimate->high);
+    add(writer, object, estimate->metres ? metres : ohms, range);
+}
+
+static cJSON *fault_object(struct writer *writer, const struct ranked *ranked)
+{
+    static const struct fault none = {.family = &fault_family_none};
+    const struct hypothesis *hypothesis = &ranked->hypothesis;
+    const struct rf_job *job = writer->diagnosis->job;
+    cJSON *object = cJSON_CreateObject();
+    const struct fault *first = hypothesis->n_faults > 0 ? &hypothesis->faults[0] : &none;
+    add(writer, object, "fault", fault_to_json(first, job));
+    if (hypothesis->n_faults > 1)
+        add(writer, object, "also", fault_to_json(&hypothesis->faults[1], job));
+    add_number(writer, object, "confidence", ranked->confidence);
+    if (hypothesis->n_faults > 0)
+        add_estimate(writer, object, "ohms", "metres", &ranked->estimates[0]);
+    if (hypothesis->n_faults > 1)
+        add_estimate(writer, object, "also_ohms", "also_metres", &ranked->estimates[1]);
+    add_words(writer, object, "text", ranked->words);
+    return object;
+}
+
+static void add_faults(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "faults");
+    for (size_t i = 0; i < diagnosis->n_ranked; i++)
+        append(writer, list, fault_object(writer, &diagnosis->ranked[i]));
+}
+
+static void add_findings(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "findings");
+    for (size_t i = 0; i < diagnosis->n_findings; i++) {
+        const struct finding *finding = &diagnosis->findings[i];
+        cJSON *object = cJSON_CreateObject();
+        add_words(writer, object, "text", finding->words);
+        add_number(writer, object, "confidence", finding->confidence);
+        cJSON *members = add_list(writer, object, "faults");
+        for (size_t j = 0; j < finding->n_members; j++)
+            append(writer, members, cJSON_CreateNumber((double)finding->members[j]));
+        append(writer, list, object);
+    }
+}
+
+/* "look" with its "place" or "run". */
+static void add_look(struct writer *writer, cJSON *object, const struct look *look)
+{
+    const struct rf_job *job = writer->diagnosis->job;
+    add_words(writer, object, "look", look->kind == LOOK_CHECK ? "check" : "open");
+    switch (look->where) {
+    case LOOK_AT_BOARD:
+        add_words(writer, object, "place", "board");
+        break;
+    case LOOK_AT_PLACE:
+        add_words(writer, object, "place", job->places[look->index].id);
+        break;
+    case LOOK_IN_RUN: {
+        cJSON *run = add_list(writer, object, "run");
+        append(writer, run, cJSON_CreateString(job->places[run_near_end(job, look->index)].id));
+        append(writer, run, cJSON_CreateString(job->places[run_far_end(look->index)].id));
+        break;
+    }
+    }
+}
+
+static void add_places(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "places");
+    for (size_t i = 0; i < diagnosis->n_places; i++) {
+        cJSON *object = cJSON_CreateObject();
+        add_look(writer, object, &diagnosis->places[i].look);
+        add_number(writer, object, "chance", diagnosis->places[i].chance);
+        append(writer, list, object);
+    }
+}
+
+/* --- readings, blind spots --- */
+
+/* Which reading it is, as read, and what the best explanation gives. */
+static cJSON *reading_object(struct writer *writer, size_t i)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    const struct reading *reading = &diagnosis->job->readings[i];
+    cJSON *object = cJSON_CreateObject();
+    add_words(writer, object, "setup", setups[reading->setup].name);
+    add_words(writer, object, "place", reading_key(diagnosis->job, reading));
+    add_ohms(writer, object, "read", reading->open ? NAN : reading->ohms);
+    if (diagnosis->n_ranked > 0)
+        add_ohms(writer, object, "fitted", diagnosis->ranked[0].fitted[i]);
+    return object;
+}
+
+static void add_suspects(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "suspect");
+    for (size_t i = 0; i < diagnosis->n_suspects; i++)
+        append(writer, list, reading_object(writer, diagnosis->suspects[i].reading));
+}
+
+static void add_readings(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "readings");
+    for (size_t i = 0; i < diagnosis->job->n_readings; i++) {
+        cJSON *object = reading_object(writer, i);
+        add_ohms(writer, object, "sound", diagnosis->sound[i]);
+        append(writer, list, object);
+    }
+}
+
+/* The kind: the example's fields without those that say where. */
+static cJSON *blind_object(struct writer *writer, const struct blind_spot *blind)
+{
+    static const char *const where[] = {"run", "at", "between", "points"};
+    cJSON *object = fault_to_json(&blind->example, writer->diagnosis->job);
+    for (size_t i = 0; i < sizeof where / sizeof where[0]; i++)
+        cJSON_DeleteItemFromObjectCaseSensitive(object, where[i]);
+    add_words(writer, object, "text", blind->words);
+    return object;
+}
+
+static void add_blind(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    cJSON *list = add_list(writer, root, "blind");
+    for (size_t i = 0; i < diagnosis->n_blind; i++)
+        append(writer, list, blind_object(writer, &diagnosis->blind[i]));
+}
+
+static void add_misfit(struct writer *writer, cJSON *root)
+{
+    cJSON *object = cJSON_CreateObject();
+    add_number(writer, object, "p", writer->diagnosis->misfit.p);
+    add(writer, object, "flag", cJSON_CreateBool(writer->diagnosis->misfit.flag));
+    add(writer, root, "misfit", object);
+}
+
+void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                 struct text *out)
+{
+    (void)advice;
+    struct writer writer = {.diagnosis = diagnosis};
+    cJSON *root = cJSON_CreateObject();
+    add_words(&writer, root, "format", "ringfettle-diagnosis/1");
+    add_words(&writer, root, "job", rf_job_name(diagnosis->job));
+    add_words(&writer, root, "models", rf_models_name(diagnosis->models));
+    add_number(&writer, root, "hypotheses", (double)diagnosis->n_hypotheses);
+    add_misfit(&writer, root);
+    add_faults(&writer, root);
+    add_findings(&writer, root);
+    add_places(&writer, root);
+    add_suspects(&writer, root);
+    add_blind(&writer, root);
+    add_readings(&writer, root);
+
+    char *line = writer.failed ? NULL : cJSON_PrintUnformatted(root);
+    if (line != NULL)
+        text_addf(out, "%s\n", line);
+    else
+        out->failed = true;
+    cJSON_free(line);
+    cJSON_Delete(root);
+}

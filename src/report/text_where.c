@@ -1,0 +1,327 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "report/text_parts.h"
+#include "report/words.h"
+#include "report/wrap.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+/* From which chance on something is said, and how many lines of a list. */
+static const double danger_said = 0.10, check_said = 0.02, place_said = 0.02, finding_said = 0.01;
+enum { CHECKS_MOST = 6, PLACES_MOST = 5, FINDINGS_MOST = 6, SUSPECTS_MOST = 6, BLIND_INLINE = 3 };
+
+bool shows_no_defect(const struct rf_diagnosis *diagnosis)
+{
+    return diagnosis->n_findings > 0 && diagnosis->findings[0].is_none && !diagnosis->misfit.flag;
+}
+
+/* Wraps a text that is finished with. */
+static void paragraph(struct text *out, const char *first, const char *rest, struct text *words)
+{
+    if (!words->failed && words->bytes != NULL)
+        wrap_words(out, first, rest, words->bytes);
+    out->failed = out->failed || words->failed;
+    text_finish(words);
+}
+
+void text_chance_line(struct text *out, double chance, const struct text *words)
+{
+    struct text percent = {0}, first = {0};
+    say_chance(chance, &percent);
+    if (!percent.failed)
+        cell_right(&first, percent.bytes, 6);
+    text_add(&first, "  ");
+    if (percent.failed || first.failed || words->failed)
+        out->failed = true;
+    else if (words->bytes != NULL)
+        wrap_words(out, first.bytes, "        ", words->bytes);
+    text_finish(&percent);
+    text_finish(&first);
+}
+
+/* --- nothing explains the readings --- */
+
+void text_misfit(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                 struct text *out)
+{
+    (void)advice;
+    if (!diagnosis->misfit.flag)
+        return;
+    struct text words = {0};
+    text_add(&words, "The likeliest of what was compared fits them badly: of jobs it is true of, ");
+    if (diagnosis->misfit.p < 0.001)
+        text_add(&words, "fewer than 1 in 1000");
+    else if (diagnosis->misfit.p < 0.01)
+        text_add(&words, "fewer than 1 in 100");
+    else
+        text_addf(&words, "about %.0f in 100", 100 * diagnosis->misfit.p);
+    text_add(&words,
+             " read so far off. Two defects, another wiring than recorded, or readings that "
+             "went wrong may be behind it. Read again before you take anything off; the "
+             "chances below are worth little.");
+    text_heading(out, "NOTHING COMPARED EXPLAINS THESE READINGS");
+    paragraph(out, "", "", &words);
+}
+
+/* --- danger --- */
+
+static int by_chance(const void *one, const void *other)
+{
+    double a = ((const struct danger_chance *)one)->chance;
+    double b = ((const struct danger_chance *)other)->chance;
+    return (a < b) - (a > b);
+}
+
+void text_danger(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                 struct text *out)
+{
+    (void)advice;
+    struct danger_chance dangers[N_DANGERS];
+    size_t n = 0;
+    for (size_t i = 0; i < N_DANGERS; i++)
+        if (i != DANGER_NONE && diagnosis->dangers[i].chance >= danger_said) {
+            dangers[n] = diagnosis->dangers[i];
+            dangers[n++].danger = (enum danger)i;
+        }
+    if (n == 0)
+        return;
+    qsort(dangers, n, sizeof dangers[0], by_chance);
+    text_heading(out, "DANGER IF RE-ENERGISED");
+    for (size_t i = 0; i < n; i++) {
+        struct text words = {0};
+        text_add(&words, danger_words[dangers[i].danger]);
+        text_chance_line(out, dangers[i].chance, &words);
+        text_finish(&words);
+    }
+}
+
+/* --- checks without a screw --- */
+
+struct board_only {
+    size_t at_board, elsewhere;
+};
+
+static void count_look(void *context, const struct look *look)
+{
+    struct board_only *count = context;
+    if (look->where == LOOK_AT_BOARD)
+        count->at_board++;
+    else
+        count->elsewhere++;
+}
+
+/* Whether a hypothesis is one fault that the board shows and nothing else: links, legs, nulling. */
+static bool shows_at_board_only(const struct rf_diagnosis *diagnosis, const struct ranked *ranked)
+{
+    struct board_only count = {0};
+    if (ranked->hypothesis.n_faults != 1)
+        return false;
+    fault_looks(&ranked->hypothesis.faults[0], diagnosis->job, diagnosis->models, count_look,
+                &count);
+    return count.at_board > 0 && count.elsewhere == 0;
+}
+
+static size_t check_faces(const struct rf_diagnosis *diagnosis, struct text *lines)
+{
+    size_t n = 0;
+    for (size_t i = 0; i < diagnosis->n_places && n < CHECKS_MOST; i++) {
+        const struct place_chance *place = &diagnosis->places[i];
+        if (place->look.kind != LOOK_CHECK || place->chance < check_said)
+            continue;
+        struct text words = {0};
+        say_look(diagnosis->job, &place->look, &words);
+        text_chance_line(lines, place->chance, &words);
+        text_finish(&words);
+        n++;
+    }
+    return n;
+}
+
+static size_t check_board(const struct rf_diagnosis *diagnosis, struct text *lines)
+{
+    size_t n = 0;
+    for (size_t i = 0; i < diagnosis->n_ranked && n < CHECKS_MOST; i++) {
+        const struct ranked *ranked = &diagnosis->ranked[i];
+        if (ranked->confidence < check_said || !shows_at_board_only(diagnosis, ranked))
+            continue;
+        struct text words = {0};
+        text_addf(&words, "at the board: %s?", ranked->words);
+        text_chance_line(lines, ranked->confidence, &words);
+        text_finish(&words);
+        n++;
+    }
+    return n;
+}
+
+static size_t check_readings(const struct rf_diagnosis *diagnosis, struct text *lines)
+{
+    size_t n = diagnosis->n_ranked > 0 ? diagnosis->n_suspects : 0;
+    for (size_t i = 0; i < n && i < SUSPECTS_MOST; i++) {
+        size_t at = diagnosis->suspects[i].reading;
+        const struct reading *reading = &diagnosis->job->readings[at];
+        struct text words = {0};
+        text_add(&words, "read again: ");
+        say_set_up(reading->setup, &words);
+        text_add(&words, ", ");
+        say_spot(diagnosis->job, reading->spot, reading->place, &words);
+        text_add(&words, ": ");
+        say_ohms_unit(reading->open ? (double)NAN : reading->ohms, &words);
+        text_add(&words, " read, ");
+        say_ohms_unit(diagnosis->ranked[0].fitted[at], &words);
+        text_add(&words, " would fit");
+        paragraph(lines, "        ", "        ", &words);
+    }
+    if (n > SUSPECTS_MOST) {
+        struct text words = {0};
+        text_addf(&words, "and %zu more, marked * in the table below", n - SUSPECTS_MOST);
+        paragraph(lines, "        ", "        ", &words);
+    }
+    return n;
+}
+
+void text_checks(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                 struct text *out)
+{
+    (void)advice;
+    struct text lines = {0};
+    size_t n = check_faces(diagnosis, &lines);
+    n += check_board(diagnosis, &lines);
+    n += check_readings(diagnosis, &lines);
+    if (n > 0 && !lines.failed) {
+        text_heading(out, "FIRST, WITHOUT A SCREW");
+        text_add(out, lines.bytes);
+    }
+    out->failed = out->failed || lines.failed;
+    text_finish(&lines);
+}
+
+/* --- where --- */
+
+static void say_no_defect(const struct rf_diagnosis *diagnosis, struct text *out)
+{
+    struct text words = {0};
+    text_add(&words, "These readings show no defect (");
+    say_chance(diagnosis->findings[0].confidence, &words);
+    text_add(&words, "). ");
+    if (diagnosis->n_blind == 0) {
+        text_add(&words, "A slight or intermittent fault they may still have missed.");
+    } else {
+        text_add(&words, "They could not have shown ");
+        for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_INLINE; i++)
+            text_addf(&words, "%s%s", i > 0 ? "; " : "", diagnosis->blind[i].words);
+        if (diagnosis->n_blind > BLIND_INLINE)
+            text_addf(&words, "; and %zu more kinds of fault, below under BLIND SPOTS",
+                      diagnosis->n_blind - BLIND_INLINE);
+        text_add(&words, ".");
+    }
+    paragraph(out, "", "", &words);
+}
+
+/* "Take P4 off first: 71 %", in a line of its own. */
+static void say_first(const struct rf_diagnosis *diagnosis, const struct place_chance *place,
+                      bool no_defect, struct text *out)
+{
+    struct text words = {0};
+    text_add(&words, no_defect ? "If something is wrong all the same, " : "");
+    size_t start = words.length;
+    say_look(diagnosis->job, &place->look, &words);
+    if (!no_defect && !words.failed && words.bytes[start] >= 'a' && words.bytes[start] <= 'z')
+        words.bytes[start] = (char)(words.bytes[start] - 'a' + 'A');
+    text_add(&words, " first: ");
+    say_chance(place->chance, &words);
+    text_add(&words, ".");
+    paragraph(out, "", "", &words);
+}
+
+static void say_places(const struct rf_diagnosis *diagnosis, struct text *out)
+{
+    size_t n = 0;
+    for (size_t i = 0; i < diagnosis->n_places && n < PLACES_MOST; i++) {
+        const struct place_chance *place = &diagnosis->places[i];
+        if (place->look.kind != LOOK_OPEN || place->chance < place_said)
+            continue;
+        if (n++ == 0) {
+            say_first(diagnosis, place, shows_no_defect(diagnosis), out);
+            continue;
+        }
+        struct text words = {0};
+        say_look(diagnosis->job, &place->look, &words);
+        text_chance_line(out, place->chance, &words);
+        text_finish(&words);
+    }
+}
+
+void text_where(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                struct text *out)
+{
+    (void)advice;
+    struct text lines = {0};
+    if (shows_no_defect(diagnosis))
+        say_no_defect(diagnosis, &lines);
+    say_places(diagnosis, &lines);
+    if (lines.length > 0 && !lines.failed) {
+        text_heading(out, "WHERE");
+        text_add(out, lines.bytes);
+    }
+    out->failed = out->failed || lines.failed;
+    text_finish(&lines);
+}
+
+/* --- findings --- */
+
+/* Whether all members are of one family, so that the parameter of the best speaks for all. */
+static bool one_family(const struct rf_diagnosis *diagnosis, const struct finding *finding)
+{
+    const struct fault_family *family = NULL;
+    for (size_t i = 0; i < finding->n_members; i++) {
+        const struct hypothesis *member = &diagnosis->ranked[finding->members[i]].hypothesis;
+        if (member->n_faults != 1 || (family != NULL && member->faults[0].family != family))
+            return false;
+        family = member->faults[0].family;
+    }
+    return family != NULL;
+}
+
+static void say_estimate(const struct estimate *estimate, struct text *out)
+{
+    if (!estimate->known)
+        return;
+    if (estimate->metres) {
+        text_addf(out, ": %.1f m of cable (90" NO_BREAK "%%: %.1f to %.1f" NO_BREAK "m)",
+                  estimate->value, estimate->low, estimate->high);
+        return;
+    }
+    text_add(out, ": ");
+    say_ohms_unit(estimate->value, out);
+    text_add(out, " (90" NO_BREAK "%: ");
+    say_ohms(estimate->low, out);
+    text_add(out, " to ");
+    say_ohms_unit(estimate->high, out);
+    text_add(out, ")");
+}
+
+void text_findings(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                   struct text *out)
+{
+    (void)advice;
+    double told = 0;
+    text_heading(out, "WHAT IT MAY BE");
+    for (size_t i = 0; i < diagnosis->n_findings && i < FINDINGS_MOST; i++) {
+        const struct finding *finding = &diagnosis->findings[i];
+        if (i > 0 && finding->confidence < finding_said)
+            break;
+        struct text words = {0};
+        text_add(&words, finding->words);
+        if (one_family(diagnosis, finding))
+            say_estimate(&diagnosis->ranked[finding->members[0]].estimates[0], &words);
+        text_chance_line(out, finding->confidence, &words);
+        text_finish(&words);
+        told += finding->confidence;
+    }
+    if (told < 1 - finding_said) {
+        struct text words = {0};
+        text_add(&words, "something else");
+        text_chance_line(out, 1 - told, &words);
+        text_finish(&words);
+    }
+}
