@@ -80,11 +80,12 @@ static bool is_plain_key(const char *key)
     return length > 0 && length <= SHOWN_MAX;
 }
 
-static void add_path(const struct json_at *at, struct text *out)
+/* The path from `top` down to `at`. */
+static void add_path(const struct json_at *at, const struct json_at *top, struct text *out)
 {
     const struct json_at *steps[JSON_MAX_DEPTH + 1];
     size_t n = 0;
-    for (; at->parent != NULL && n <= JSON_MAX_DEPTH; at = at->parent)
+    for (; at != top && at->parent != NULL && n <= JSON_MAX_DEPTH; at = at->parent)
         steps[n++] = at;
     for (size_t i = n; i-- > 0;) {
         const char *key = steps[i]->key;
@@ -101,13 +102,20 @@ static void add_path(const struct json_at *at, struct text *out)
     }
 }
 
-/* Begins a message with the source and the path. */
+/* Begins a message with the source and the path; with the origin's own name for the nearest place
+ * that it knows, and the path from there. */
 static void add_place(const struct json_at *at, struct text *out)
 {
+    const struct json_at *top = at;
     text_add(out, at->source);
     text_add(out, ": ");
-    if (at->parent != NULL) {
-        add_path(at, out);
+    while (top != NULL && !(at->origin != NULL && top->value != NULL &&
+                            at->origin->name(at->origin, top->value, out)))
+        top = top->parent;
+    if (top != NULL)
+        text_add(out, top != at ? ", " : ": ");
+    if (top != at && at->parent != NULL) {
+        add_path(at, top, out);
         text_add(out, ": ");
     }
 }
@@ -319,6 +327,7 @@ struct json_at json_member(const struct json_at *at, const char *key)
     return (struct json_at){
         .parent = at,
         .source = at->source,
+        .origin = at->origin,
         .key = key,
         .value = cJSON_IsObject(at->value) ? cJSON_GetObjectItemCaseSensitive(at->value, key)
                                            : NULL,
@@ -330,6 +339,7 @@ struct json_at json_child(const struct json_at *at, size_t index, const cJSON *v
     return (struct json_at){
         .parent = at,
         .source = at->source,
+        .origin = at->origin,
         .key = value != NULL && cJSON_IsObject(at->value) ? value->string : NULL,
         .index = index,
         .value = value,

@@ -23,12 +23,24 @@
 
 enum { JSON_MAX_DEPTH = 64 };
 
+struct text;
+
+/*
+ * A document that was not read from JSON text names its places as its own format does: `name`
+ * appends where `value` stands ("row 14, column cross_le"), or returns false where it does not
+ * know. Whoever makes it keeps it while messages about the document may be written.
+ */
+struct json_origin {
+    bool (*name)(const struct json_origin *origin, const cJSON *value, struct text *out);
+};
+
 struct json_at {
     const struct json_at *parent; /* NULL: the document itself */
     const char *source;           /* the file's name, for messages */
     const char *key;              /* of a member; NULL: an element, or the document */
     size_t index;                 /* of an element, from 0 */
     const cJSON *value;           /* NULL: not there */
+    const struct json_origin *origin; /* NULL: places are named by their path */
 };
 
 /* How a place in the text is named in messages. */
@@ -105,7 +117,6 @@ enum rf_status json_fail_found(const struct json_at *at, struct rf_error *error,
                                const char *needs);
 
 /* A value in a few words, for a message ("\"kitchen\"", "0.4", "a list"); strings shortened. */
-struct text;
 void json_describe(const cJSON *value, struct text *out);
 
 #endif

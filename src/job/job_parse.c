@@ -110,11 +110,13 @@ static enum rf_status parse_found(const struct json_at *document, struct rf_job 
     return RF_OK;
 }
 
-static enum rf_status parse_document(struct rf_job *job, struct rf_error *error)
+static enum rf_status parse_document(struct rf_job *job, const struct json_origin *origin,
+                                     size_t least, struct rf_error *error)
 {
     static const char *const keys[] = {"format",   "job",    "date",   "note",    "ring",
                                        "readings", "access", "opened", "checked", "found"};
     struct json_at document = json_document(job->document, job->source);
+    document.origin = origin;
     struct json_at ring = json_member(&document, "ring");
     struct json_at readings = json_member(&document, "readings");
 
@@ -128,7 +130,7 @@ static enum rf_status parse_document(struct rf_job *job, struct rf_error *error)
     if (status == RF_OK)
         status = job_parse_ring(&ring, job, error);
     if (status == RF_OK)
-        status = job_parse_readings(&readings, job, error);
+        status = job_parse_readings(&readings, least, job, error);
     if (status == RF_OK)
         status = job_parse_looks(&document, job, error);
     if (status == RF_OK)
@@ -136,30 +138,38 @@ static enum rf_status parse_document(struct rf_job *job, struct rf_error *error)
     return status;
 }
 
-enum rf_status job_parse(const char *text, size_t length, const char *source,
-                         enum json_lines lines, struct rf_job **job, struct rf_error *error)
+enum rf_status job_from_document(cJSON *document, const struct json_origin *origin,
+                                 const char *source, size_t least, struct rf_job **job,
+                                 struct rf_error *error)
 {
     *job = NULL;
-    if (length > JOB_MAX_BYTES)
-        return fail(error, RF_LIMIT, "%s: found a job of %zu bytes; needs one of at most 16 MiB",
-                    source, length);
-
     struct rf_job *made = NEW(struct rf_job);
-    if (made == NULL)
+    if (made == NULL) {
+        cJSON_Delete(document);
         return fail_memory(error);
-    enum rf_status status = RF_OK;
+    }
+    made->document = document;
     made->source = text_duplicate(source);
-    if (made->source == NULL)
-        status = fail_memory(error);
+    enum rf_status status = made->source != NULL ? RF_OK : fail_memory(error);
     if (status == RF_OK)
-        status = json_parse(text, length, made->source, lines, &made->document, error);
-    if (status == RF_OK)
-        status = parse_document(made, error);
+        status = parse_document(made, origin, least, error);
     if (status == RF_OK)
         *job = made;
     else
         rf_job_destroy(made);
     return status;
+}
+
+enum rf_status job_parse(const char *text, size_t length, const char *source,
+                         enum json_lines lines, struct rf_job **job, struct rf_error *error)
+{
+    cJSON *document;
+    *job = NULL;
+    if (length > JOB_MAX_BYTES)
+        return fail(error, RF_LIMIT, "%s: found a job of %zu bytes; needs one of at most 16 MiB",
+                    source, length);
+    enum rf_status status = json_parse(text, length, source, lines, &document, error);
+    return status == RF_OK ? job_from_document(document, NULL, source, 1, job, error) : status;
 }
 
 enum rf_status rf_job_parse(const char *text, size_t length, const char *name,

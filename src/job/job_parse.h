@@ -12,10 +12,20 @@
 enum rf_status job_parse(const char *text, size_t length, const char *source,
                          enum json_lines lines, struct rf_job **job, struct rf_error *error);
 
+/*
+ * A job from a document that another format's reader made; `origin` names its places in messages
+ * (NULL: by their paths). `least`: how many readings it must have; a job that was only begun has
+ * none. Takes the document over, also where it refuses.
+ */
+enum rf_status job_from_document(cJSON *document, const struct json_origin *origin,
+                                 const char *source, size_t least, struct rf_job **job,
+                                 struct rf_error *error);
+
 enum rf_status job_parse_ring(const struct json_at *ring, struct rf_job *job,
                               struct rf_error *error);
-enum rf_status job_parse_readings(const struct json_at *readings, struct rf_job *job,
-                                  struct rf_error *error);
+/* `least`: how many there must be. Where that is none, `readings` may be missing. */
+enum rf_status job_parse_readings(const struct json_at *readings, size_t least,
+                                  struct rf_job *job, struct rf_error *error);
 /* `access`, `opened`, `checked`. */
 enum rf_status job_parse_looks(const struct json_at *document, struct rf_job *job,
                                struct rf_error *error);

@@ -146,14 +146,16 @@ static size_t count_values(const struct json_at *readings)
     return n < JOB_MAX_READINGS ? n : JOB_MAX_READINGS;
 }
 
-enum rf_status job_parse_readings(const struct json_at *readings, struct rf_job *job,
-                                  struct rf_error *error)
+enum rf_status job_parse_readings(const struct json_at *readings, size_t least,
+                                  struct rf_job *job, struct rf_error *error)
 {
     const char *names[N_SETUPS];
     for (size_t i = 0; i < N_SETUPS; i++)
         names[i] = setups[i].name;
 
     job->setup_in_place = N_SETUPS;
+    if (readings->value == NULL && least == 0)
+        return RF_OK;
     enum rf_status status = json_object(readings, names, N_SETUPS, error);
     if (status != RF_OK)
         return status;
@@ -167,7 +169,7 @@ enum rf_status job_parse_readings(const struct json_at *readings, struct rf_job 
         if (status != RF_OK)
             return status;
     }
-    if (job->n_readings == 0)
+    if (job->n_readings < least)
         return json_fail(readings, error, RF_REFUSED, "no reading in it; needs at least one");
     return RF_OK;
 }

@@ -9,6 +9,7 @@
 #include "base/memory.h"
 #include "base/text.h"
 #include "job/job_parse.h"
+#include "job/sheet.h"
 
 #include <errno.h>
 #include <fcntl.h>
@@ -29,6 +30,7 @@ struct format {
 };
 
 static const struct format formats[] = {
+    {.name = "sheet", .recognises = sheet_first_line, .parse = sheet_job_parse},
     {.name = "JSON", .line_may_be_job = true, .parse = job_parse},
 };
 
@@ -203,7 +205,7 @@ static bool is_one_a_line(struct rf_job_reader *reader, struct rf_error *error,
     return !goes_on;
 }
 
-/* Puts the whole file into one text; empty lines stand for the blank ones passed over, so that
+/* Puts the whole file into one text; empty lines stand for blank ones passed over, so that
  * messages name the right line. */
 static enum rf_status read_document(struct rf_job_reader *reader, struct text *document,
                                     struct rf_error *error)
@@ -221,7 +223,9 @@ static enum rf_status read_document(struct rf_job_reader *reader, struct text *d
         text_append(document, next->text.bytes, next->text.length);
         if (document->failed)
             return fail_memory(error);
-        status = next_line(reader, next, error);
+        /* Blank lines stay as they are: they may stand inside a sheet's quotes. */
+        status = reader->ahead.number > 0 ? next_line(reader, next, error)
+                                          : read_line(reader, next, error);
     }
     return status;
 }
