@@ -196,6 +196,7 @@ static inline void maker_found(struct maker *maker, cJSON *into, const char *key
         cJSON_AddStringToObject(found, "family", "joint");
         cJSON_AddItemToObject(found, "run", cJSON_CreateStringArray(ends, 2));
         cJSON_AddStringToObject(found, "conductor", "N");
+        cJSON_AddNumberToObject(found, "ohms", 0.5);
         break;
     case 1:
         cJSON_AddStringToObject(found, "family", "contact");

@@ -22,7 +22,8 @@ const char *const sheet_end_keys[3] = {"l", "n", "e"};
 static const char separators[] = {',', ';', '\t'};
 static const char *const number_rows[] = {
     "live_mm2", "cpc_mm2", "temperature_c", "length_accuracy", "r1", "rn", "r2",
-    "found.live_mm2", "found.cpc_mm2", "found.also.live_mm2", "found.also.cpc_mm2",
+    "found.live_mm2", "found.cpc_mm2", "found.ohms", "found.metres",
+    "found.also.live_mm2", "found.also.cpc_mm2", "found.also.ohms", "found.also.metres",
 };
 
 bool sheet_same_word(const char *one, const char *other)

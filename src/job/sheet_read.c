@@ -251,6 +251,7 @@ static const struct key_row found_rows[] = {
     {"pair", TEXT, "pair", 0},           {"live_mm2", NUMBER, "live_mm2", 0},
     {"cpc_mm2", NUMBER, "cpc_mm2", 0},   {"leg", TEXT, "leg", 0},
     {"setup", TEXT, "setup", 0},         {"end", TEXT, "end", 0},
+    {"ohms", NUMBER, "ohms", 0},         {"metres", NUMBER, "metres", 0},
 };
 enum {
     N_KEY_ROWS = sizeof key_rows / sizeof key_rows[0],
