@@ -16,6 +16,7 @@
 static const struct command *const commands[] = {
     &command_diagnose,
     &command_check,
+    &command_expect,
 };
 
 enum {

@@ -64,7 +64,7 @@ static void set_up_row(size_t setup, bool first, struct text *out)
     struct text name = {0};
     say_set_up(setup, &name);
     if (!name.failed && first) {
-        cell_left(out, name.bytes, PLACE_COLUMNS);
+        cell_heading(out, name.bytes, PLACE_COLUMNS);
         cell_right(out, "as read", OHM_COLUMNS);
         cell_right(out, "fitted", OHM_COLUMNS);
         cell_right(out, "no defect", OHM_COLUMNS);

@@ -204,7 +204,7 @@ static void say_no_defect(const struct rf_diagnosis *diagnosis, struct text *out
     say_chance(diagnosis->findings[0].confidence, &words);
     text_add(&words, "). ");
     if (diagnosis->n_blind == 0) {
-        text_add(&words, "A slight or intermittent fault they may still have missed.");
+        text_add(&words, "A slight or intermittent fault may still have escaped them.");
     } else {
         text_add(&words, "They could not have shown ");
         for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_INLINE; i++)
@@ -217,16 +217,29 @@ static void say_no_defect(const struct rf_diagnosis *diagnosis, struct text *out
     paragraph(out, "", "", &words);
 }
 
+/* Whether a check of some face is likelier to show it than that place. */
+static bool face_before(const struct rf_diagnosis *diagnosis, const struct place_chance *place)
+{
+    for (size_t i = 0; i < diagnosis->n_places; i++)
+        if (diagnosis->places[i].look.kind == LOOK_CHECK &&
+            diagnosis->places[i].chance > place->chance)
+            return true;
+    return false;
+}
+
 /* "Take P4 off first: 71 %", in a line of its own. */
 static void say_first(const struct rf_diagnosis *diagnosis, const struct place_chance *place,
-                      bool no_defect, struct text *out)
+                      struct text *out)
 {
     struct text words = {0};
-    text_add(&words, no_defect ? "If something is wrong all the same, " : "");
-    size_t start = words.length;
+    if (shows_no_defect(diagnosis))
+        text_add(&words, "If something is wrong all the same, ");
+    else if (face_before(diagnosis, place))
+        text_add(&words, "If the checks above show nothing, ");
+    bool begins = words.length == 0;
     say_look(diagnosis->job, &place->look, &words);
-    if (!no_defect && !words.failed && words.bytes[start] >= 'a' && words.bytes[start] <= 'z')
-        words.bytes[start] = (char)(words.bytes[start] - 'a' + 'A');
+    if (begins && !words.failed)
+        words.bytes[0] = (char)(words.bytes[0] - 'a' + 'A');
     text_add(&words, " first: ");
     say_chance(place->chance, &words);
     text_add(&words, ".");
@@ -241,7 +254,7 @@ static void say_places(const struct rf_diagnosis *diagnosis, struct text *out)
         if (place->look.kind != LOOK_OPEN || place->chance < place_said)
             continue;
         if (n++ == 0) {
-            say_first(diagnosis, place, shows_no_defect(diagnosis), out);
+            say_first(diagnosis, place, out);
             continue;
         }
         struct text words = {0};

@@ -177,3 +177,11 @@ void cell_right(struct text *out, const char *words, size_t columns)
 {
     cell(out, words, columns, true);
 }
+
+void cell_heading(struct text *out, const char *words, size_t columns)
+{
+    bool fits = text_columns(words) <= columns;
+    if (!fits)
+        wrap_words(out, "", "", words);
+    cell_left(out, fits ? words : "", columns);
+}

@@ -21,4 +21,8 @@ void wrap_entry(struct text *out, const char *name, const char *meaning);
 void cell_left(struct text *out, const char *words, size_t columns);
 void cell_right(struct text *out, const char *words, size_t columns);
 
+/* The same on the left of a row whose other cells follow; words that do not fit get a line of their
+ * own before it. */
+void cell_heading(struct text *out, const char *words, size_t columns);
+
 #endif
