@@ -54,7 +54,7 @@ static enum rf_status diagnose_with(struct rf_diagnosis *diagnosis, struct candi
         candidates_enumerate(candidates, diagnosis->job, diagnosis->models, error);
     diagnosis->n_hypotheses = candidates->n;
     if (status == RF_OK)
-        status = candidates_rank(candidates, fitter, &diagnosis->ring, error);
+        status = candidates_rank(candidates, fitter, &diagnosis->ring, diagnosis->screened, error);
     if (status == RF_OK)
         status = keep_ranked(diagnosis, candidates, fitter, error);
     if (status == RF_OK)
@@ -81,12 +81,19 @@ static enum rf_status read_found(struct rf_diagnosis *diagnosis, struct rf_error
 enum rf_status rf_diagnose(const struct rf_job *job, const struct rf_models *models,
                            struct rf_diagnosis **result, struct rf_error *error)
 {
+    return diagnose(job, models, true, result, error);
+}
+
+enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models, bool screen,
+                        struct rf_diagnosis **result, struct rf_error *error)
+{
     *result = NULL;
     struct rf_diagnosis *diagnosis = NEW(struct rf_diagnosis);
     if (diagnosis == NULL)
         return fail_memory(error);
     diagnosis->job = job;
     diagnosis->models = models;
+    diagnosis->screened = screen;
     struct candidates candidates = {0};
     struct fitter *fitter = NULL;
     enum rf_status status = wiring_init(&diagnosis->ring, job, models, error);

@@ -72,6 +72,7 @@ struct rf_diagnosis {
     const struct rf_job *job;
     const struct rf_models *models;
     struct wiring ring; /* as recorded */
+    bool screened;
     size_t n_hypotheses;
     size_t n_ranked;
     struct ranked *ranked; /* best first */
@@ -98,6 +99,10 @@ struct rf_diagnosis {
     size_t found_rank;       /* 0: first; n_ranked where it is not among them */
     double found_confidence; /* 0 where it was not compared */
 };
+
+/* As rf_diagnose, with screening or (to check it) without. */
+enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models, bool screen,
+                        struct rf_diagnosis **diagnosis, struct rf_error *error);
 
 /* Hypotheses below this are not listed. */
 extern const double confidence_shown;

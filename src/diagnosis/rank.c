@@ -5,6 +5,7 @@
 
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 /* Logs of posteriors nearer than this are ties; rounding alone moves them by less. */
 static const double tie = 1e-6;
@@ -12,28 +13,6 @@ static const double tie = 1e-6;
 static double log_weight(const struct candidate *candidate)
 {
     return candidate->log_prior + candidate->log_looks + candidate->log_evidence;
-}
-
-static enum rf_status fit_all(struct candidates *candidates, struct fitter *fitter,
-                              struct wiring *wiring, const struct wiring *ring,
-                              struct rf_error *error)
-{
-    for (size_t i = 0; i < candidates->n; i++) {
-        struct candidate *candidate = &candidates->list[i];
-        struct fit fit;
-        wiring_copy(wiring, ring);
-        hypothesis_apply(&candidate->hypothesis, wiring, NULL);
-        if (fitter_fit(fitter, wiring, NULL, &fit) != RF_OK) {
-            struct text words = {0};
-            hypothesis_words(&candidate->hypothesis, ring->job, &words);
-            fail(error, RF_NUMERICAL, "%s: the fit failed for: %s", ring->job->source,
-                 words.bytes != NULL ? words.bytes : "a hypothesis");
-            text_finish(&words);
-            return RF_NUMERICAL;
-        }
-        candidate->log_evidence = fit.log_evidence;
-    }
-    return RF_OK;
 }
 
 struct ordered {
@@ -47,6 +26,100 @@ static int by_weight(const void *a, const void *b)
     if (one->log_weight != other->log_weight)
         return one->log_weight > other->log_weight ? -1 : 1;
     return one->index < other->index ? -1 : 1;
+}
+
+/*
+ * Screening. A job's hypotheses are fitted a batch at a time: first all with normal noise, then,
+ * in the order of how they stand after that, with the mixture, which gives one up as soon as it is
+ * as good as certain to stay `out_of_reach` below the best so far. What is given up weighs nothing:
+ * all n of them together would have had less than n · exp(−out_of_reach) of the confidence.
+ */
+enum { BATCH = 1024 };
+
+static double out_of_reach(size_t n)
+{
+    return 9.0 + log((double)n);
+}
+
+struct ranking {
+    struct candidates *candidates;
+    struct fitter *fitter;
+    const struct wiring *ring;
+    struct wiring wiring; /* of the hypothesis at hand */
+    bool screen;
+    double best;          /* the largest log weight so far */
+    double *theta;        /* BATCH × stride: where the first stage ended */
+    size_t stride;
+    struct ordered *order; /* [BATCH] */
+};
+
+static enum rf_status report_failure(const struct ranking *r, const struct candidate *candidate,
+                                     struct rf_error *error)
+{
+    struct text words = {0};
+    hypothesis_words(&candidate->hypothesis, r->ring->job, &words);
+    fail(error, RF_NUMERICAL, "%s: the fit failed for: %s", r->ring->job->source,
+         words.bytes != NULL ? words.bytes : "a hypothesis");
+    text_finish(&words);
+    return RF_NUMERICAL;
+}
+
+static enum rf_status analyse(struct ranking *r, const struct candidate *candidate)
+{
+    wiring_copy(&r->wiring, r->ring);
+    hypothesis_apply(&candidate->hypothesis, &r->wiring, NULL);
+    return fitter_analyse(r->fitter, &r->wiring);
+}
+
+static double log_share(const struct candidate *candidate)
+{
+    return candidate->log_prior + candidate->log_looks;
+}
+
+/* First stage for a batch; leaves where each ended in theta, and how it stands in order. */
+static enum rf_status fit_batch_normal(struct ranking *r, size_t first, size_t n,
+                                       struct rf_error *error)
+{
+    for (size_t i = 0; i < n; i++) {
+        const struct candidate *candidate = &r->candidates->list[first + i];
+        struct fit fit = {0};
+        r->order[i] = (struct ordered){-INFINITY, i};
+        if (r->screen && log_share(candidate) == -INFINITY)
+            continue;
+        if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, NULL, &fit) != RF_OK)
+            return report_failure(r, candidate, error);
+        memcpy(r->theta + i * r->stride, fit.theta, fit.n_parameters * sizeof *fit.theta);
+        r->order[i].log_weight = log_share(candidate) + fitter_log_posterior(r->fitter);
+    }
+    return RF_OK;
+}
+
+static enum rf_status fit_batch_mixture(struct ranking *r, size_t first, size_t n,
+                                        struct rf_error *error)
+{
+    double reach = out_of_reach(r->candidates->n);
+    qsort(r->order, n, sizeof *r->order, by_weight);
+    for (size_t i = 0; i < n; i++) {
+        size_t index = r->order[i].index;
+        struct candidate *candidate = &r->candidates->list[first + index];
+        struct fit fit = {0};
+        candidate->log_evidence = -INFINITY;
+        if (r->screen && log_share(candidate) == -INFINITY)
+            continue;
+        double hopeless = r->screen ? r->best - reach - log_share(candidate) : -INFINITY;
+        enum rf_status status = analyse(r, candidate);
+        if (status == RF_OK) {
+            fitter_resume(r->fitter, r->theta + index * r->stride, &fit);
+            status = fitter_fit_mixture(r->fitter, hopeless, &fit);
+        }
+        if (status != RF_OK)
+            return report_failure(r, candidate, error);
+        if (fit.abandoned)
+            continue;
+        candidate->log_evidence = fit.log_evidence;
+        r->best = fmax(r->best, log_weight(candidate));
+    }
+    return RF_OK;
 }
 
 static int by_index(const void *a, const void *b)
@@ -99,14 +172,40 @@ static bool sort_candidates(struct candidates *candidates)
     return ok;
 }
 
-enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
-                               const struct wiring *ring, struct rf_error *error)
+static enum rf_status fit_all(struct ranking *r, struct rf_error *error)
 {
-    struct wiring wiring = {0};
-    enum rf_status status = wiring_init(&wiring, ring->job, ring->models, error);
+    enum rf_status status = RF_OK;
+    for (size_t first = 0; first < r->candidates->n && status == RF_OK; first += BATCH) {
+        size_t left = r->candidates->n - first, n = left < BATCH ? left : BATCH;
+        status = fit_batch_normal(r, first, n, error);
+        if (status == RF_OK)
+            status = fit_batch_mixture(r, first, n, error);
+    }
+    return status;
+}
+
+enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
+                               const struct wiring *ring, bool screen, struct rf_error *error)
+{
+    size_t batch = candidates->n < BATCH ? candidates->n : BATCH;
+    struct ranking ranking = {
+        .candidates = candidates,
+        .fitter = fitter,
+        .ring = ring,
+        .screen = screen,
+        .best = -INFINITY,
+        .stride = (size_t)ring->map.n_common + FAULTS_AT_ONCE,
+    };
+    ranking.theta = NEW_ARRAY(double, batch * ranking.stride);
+    ranking.order = NEW_ARRAY(struct ordered, batch);
+    enum rf_status status = ranking.theta == NULL || ranking.order == NULL
+                                ? fail_memory(error)
+                                : wiring_init(&ranking.wiring, ring->job, ring->models, error);
     if (status == RF_OK)
-        status = fit_all(candidates, fitter, &wiring, ring, error);
-    wiring_finish(&wiring);
+        status = fit_all(&ranking, error);
+    wiring_finish(&ranking.wiring);
+    free(ranking.theta);
+    free(ranking.order);
     if (status != RF_OK)
         return status;
     normalise(candidates);

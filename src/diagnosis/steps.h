@@ -27,9 +27,10 @@ enum rf_status candidates_enumerate(struct candidates *candidates, const struct 
 void candidates_finish(struct candidates *candidates); /* takes zeroed */
 
 /* rank.c: fits each, sorts them best first (ties keep enumeration order) and makes the confidences
- * sum to one. */
+ * sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
+ * other confidence moves by more than some ten thousandths. */
 enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
-                               const struct wiring *ring, struct rf_error *error);
+                               const struct wiring *ring, bool screen, struct rf_error *error);
 
 /* The steps after that. Each fills its part of the diagnosis. `best` is the fit of the first. */
 enum rf_status keep_ranked(struct rf_diagnosis *diagnosis, const struct candidates *candidates,

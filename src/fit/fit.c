@@ -9,6 +9,7 @@
 
 struct fitter {
     const struct wiring *ring;
+    const struct wiring *wiring; /* of the hypothesis at hand */
     struct forward *forward;
     size_t n_observations;
     struct observation *observations;
@@ -19,8 +20,7 @@ struct fitter {
     double *gradient;      /* [parameter] of F */
     double *hessian;       /* stride × stride, then its factor */
     double *weights, *z;   /* [observation] */
-    double *pull, *grip;   /* [measurement] Σ w z / σ and Σ w / σ² over its readings */
-    double *row;           /* [parameter] */
+    double *pull, *grip;   /* [measurement] Σ w z / σ and Σ curvature / σ² over its readings */
 };
 
 enum noise { NOISE_NORMAL, NOISE_MIXTURE };
@@ -40,7 +40,6 @@ void fitter_destroy(struct fitter *f)
     free(f->z);
     free(f->pull);
     free(f->grip);
-    free(f->row);
     free(f);
 }
 
@@ -88,10 +87,9 @@ struct fitter *fitter_create(const struct wiring *ring)
     f->z = NEW_ARRAY(double, f->n_observations);
     f->pull = NEW_ARRAY(double, f->n_observations);
     f->grip = NEW_ARRAY(double, f->n_observations);
-    f->row = NEW_ARRAY(double, d);
     bool ok = list != NULL && f->observations != NULL && f->theta != NULL && f->trial != NULL &&
               f->step != NULL && f->gradient != NULL && f->hessian != NULL && f->weights != NULL &&
-              f->z != NULL && f->pull != NULL && f->grip != NULL && f->row != NULL &&
+              f->z != NULL && f->pull != NULL && f->grip != NULL &&
               list_measurements(f, list, &n);
     if (ok)
         f->forward = forward_create(ring, list, n);
@@ -168,8 +166,14 @@ static bool observed(const struct fitter *f, const struct observation *o)
     return !o->open && forward_reachable(f->forward, o->measurement);
 }
 
+enum curvature {
+    CURVATURE_INLIERS, /* W, as the evidence has it */
+    CURVATURE_OBSERVED /* −∂² log-likelihood/∂mean², where it is positive: steps are longer where a
+                        * reading is on its way to being written off, and fewer */
+};
+
 /* Repeats of a reading share their row of J, so they are summed before it is used. */
-static void gather(struct fitter *f)
+static void gather(struct fitter *f, enum curvature curvature)
 {
     size_t n = forward_measurements(f->forward);
     memset(f->pull, 0, n * sizeof *f->pull);
@@ -178,36 +182,77 @@ static void gather(struct fitter *f)
         const struct observation *o = &f->observations[i];
         if (!observed(f, o))
             continue;
-        double w = f->weights[i] / o->sigma;
-        f->pull[o->measurement] += w * f->z[i];
-        f->grip[o->measurement] += w / o->sigma;
+        double w = f->weights[i], z = f->z[i], grip = w;
+        if (curvature == CURVATURE_OBSERVED)
+            grip = fmax(0.0, w * (1.0 - (1.0 - w) * z * z));
+        f->pull[o->measurement] += w * z / o->sigma;
+        f->grip[o->measurement] += grip / (o->sigma * o->sigma);
+    }
+}
+
+/* Adds Σ_i grip_i row_i row_iᵀ over four rows to the lower triangle of A (d×d): four at a time,
+ * because the triangle is then loaded and stored a quarter as often. */
+static void add_four(double *A, size_t stride, size_t d, const double grip[4],
+                     const double *const rows[4])
+{
+    const double *restrict r0 = rows[0], *restrict r1 = rows[1];
+    const double *restrict r2 = rows[2], *restrict r3 = rows[3];
+    for (size_t j = 0; j < d; j++) {
+        double *restrict target = A + j * stride;
+        double s0 = grip[0] * r0[j], s1 = grip[1] * r1[j];
+        double s2 = grip[2] * r2[j], s3 = grip[3] * r3[j];
+        for (size_t k = 0; k <= j; k++)
+            target[k] += (s0 * r0[k] + s1 * r1[k]) + (s2 * r2[k] + s3 * r3[k]);
     }
 }
 
 /* H = I + JᵀWJ (lower triangle) and the gradient of F at θ, from what was evaluated there. */
-static void normal_equations(struct fitter *f, const double *theta, size_t d)
+static void normal_equations(struct fitter *f, enum curvature curvature, size_t d)
 {
-    size_t n = forward_measurements(f->forward);
-    gather(f);
+    size_t n = forward_measurements(f->forward), filled = 0;
+    double grip[4] = {0};
+    const double *rows[4] = {NULL};
+    gather(f, curvature);
     for (size_t j = 0; j < d; j++) {
         memset(f->hessian + j * f->stride, 0, (j + 1) * sizeof *f->hessian);
         f->hessian[j * f->stride + j] = 1.0;
-        f->gradient[j] = theta[j];
+        f->gradient[j] = f->theta[j];
     }
     for (size_t i = 0; i < n; i++) {
-        double grip = f->grip[i], pull = f->pull[i];
-        if (grip == 0.0)
-            continue;
         const double *restrict row = forward_gradient(f->forward, i);
-        for (size_t j = 0; j < d; j++) {
-            double *restrict target = f->hessian + j * f->stride;
-            double scaled = grip * row[j];
-            f->gradient[j] -= pull * row[j];
-            if (scaled == 0.0)
-                continue;
-            for (size_t k = 0; k <= j; k++)
-                target[k] += scaled * row[k];
+        double pull = f->pull[i];
+        if (pull != 0.0)
+            for (size_t j = 0; j < d; j++)
+                f->gradient[j] -= pull * row[j];
+        if (f->grip[i] == 0.0)
+            continue;
+        grip[filled] = f->grip[i];
+        rows[filled++] = row;
+        if (filled == 4) {
+            add_four(f->hessian, f->stride, d, grip, rows);
+            filled = 0;
         }
+    }
+    if (filled > 0) {
+        for (size_t i = filled; i < 4; i++) {
+            grip[i] = 0.0;
+            rows[i] = rows[0];
+        }
+        add_four(f->hessian, f->stride, d, grip, rows);
+    }
+}
+
+/*
+ * Gauss-Newton leaves the second derivative of the mean out. In a resistance exp(σθ) that is
+ * σ ∂mean/∂θ, so its part of the Hessian is −σ_j Σ pull_i J_ij = σ_j (g_j − θ_j), for nothing. It is
+ * added where it is positive: a fault that would rather not be there otherwise overshoots.
+ */
+static void add_second_derivatives(struct fitter *f, size_t d)
+{
+    for (size_t j = 0; j < d; j++) {
+        double second = f->wiring->parameters[j].sigma * (f->gradient[j] - f->theta[j]);
+        if (second > 0.0)
+            f->hessian[j * f->stride + j] += second;
     }
 }
 
@@ -246,62 +291,92 @@ static bool descend(struct fitter *f, enum noise noise, size_t d, double *value)
     return false;
 }
 
-/*
- * Minimises F from f->theta. Stops when the decrease a full step promises, ½ gᵀH⁻¹g, is below
- * `promise`. On return means, gradients and weights are those at f->theta, and the Hessian there is
- * factored. False: the arithmetic failed.
- */
-static bool minimise(struct fitter *f, enum noise noise, size_t d, double promise, double *value,
-                     struct fit *fit)
+/* The Newton step at θ, shortened; returns the decrease of F it promises, ½ gᵀH⁻¹g. Negative: the
+ * arithmetic failed. */
+static double newton_step(struct fitter *f, enum curvature curvature, size_t d)
 {
-    *value = objective(f, noise, f->theta, d);
-    fit->converged = false;
-    for (int iteration = 0;; iteration++) {
-        if (!isfinite(*value))
-            return false;
-        normal_equations(f, f->theta, d);
-        if (!cholesky_factor(f->hessian, d, f->stride))
-            return false;
-        for (size_t j = 0; j < d; j++)
-            f->step[j] = -f->gradient[j];
-        cholesky_half_solve(f->hessian, d, f->stride, f->step);
-        if (half_square(f->step, d) < promise) {
-            fit->converged = true;
-            return true;
-        }
-        if (iteration == MOST_ITERATIONS)
-            return true;
-        for (size_t j = 0; j < d; j++)
-            f->step[j] = -f->gradient[j];
-        cholesky_solve(f->hessian, d, f->stride, f->step);
-        shorten(f->step, d);
-        fit->iterations++;
-        if (!descend(f, noise, d, value)) {
-            /* At the floor of the arithmetic: put back what belongs to θ. */
-            *value = objective(f, noise, f->theta, d);
-            fit->converged = true;
-            return isfinite(*value);
-        }
-    }
+    normal_equations(f, curvature, d);
+    add_second_derivatives(f, d);
+    if (!cholesky_factor(f->hessian, d, f->stride))
+        return -1.0;
+    double promise = 0.0;
+    for (size_t j = 0; j < d; j++)
+        f->step[j] = -f->gradient[j];
+    cholesky_solve(f->hessian, d, f->stride, f->step);
+    for (size_t j = 0; j < d; j++)
+        promise -= 0.5 * f->step[j] * f->gradient[j];
+    shorten(f->step, d);
+    return fmax(promise, 0.0);
 }
 
-/* Where the first stage may stop early, as only the second's answer counts; and where that stops. */
-static const double first_promise = 1e-3, second_promise = 1e-7;
+/* When to stop: at a promise below `promise`, or below `share` of what F is; or, with F as good as
+ * certain to stay above `hopeless`, at once. */
+struct patience {
+    double promise, share, hopeless;
+};
 
-enum rf_status fitter_fit(struct fitter *f, const struct wiring *wiring, const double start[],
-                          struct fit *fit)
+/* What is still to come may be more than one step promises, but hardly by so much. */
+static const double promise_kept = 10.0, promise_slack = 1.0;
+
+/*
+ * Minimises F from f->theta. On return means, gradients and weights are those at f->theta.
+ * False: the arithmetic failed.
+ */
+static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patience patience,
+                     struct fit *fit)
 {
-    size_t d = (size_t)wiring->n_parameters;
-    double value = 0.0;
-    *fit = (struct fit){.n_parameters = d, .stride = f->stride};
-    if (forward_analyse(f->forward, wiring) != RF_OK)
-        return RF_NUMERICAL;
+    double value = objective(f, noise, f->theta, d);
+    fit->converged = false;
+    for (int iteration = 0; isfinite(value); iteration++) {
+        double promise = newton_step(f, noise == NOISE_MIXTURE ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
+        if (promise < 0.0)
+            return false;
+        fit->objective = value;
+        fit->abandoned = value - promise_kept * promise - promise_slack > patience.hopeless;
+        fit->converged = promise < fmax(patience.promise, patience.share * value);
+        if (fit->abandoned || fit->converged || iteration == MOST_ITERATIONS)
+            return true;
+        fit->iterations++;
+        if (!descend(f, noise, d, &value)) {
+            /* At the floor of the arithmetic: put back what belongs to θ. */
+            fit->converged = true;
+            return isfinite(objective(f, noise, f->theta, d));
+        }
+    }
+    return false;
+}
+
+enum rf_status fitter_analyse(struct fitter *f, const struct wiring *wiring)
+{
+    f->wiring = wiring;
+    return forward_analyse(f->forward, wiring);
+}
+
+enum rf_status fitter_fit_normal(struct fitter *f, const double start[], struct fit *fit)
+{
+    size_t d = (size_t)f->wiring->n_parameters;
+    *fit = (struct fit){.n_parameters = d, .stride = f->stride, .theta = f->theta};
     if (start != NULL)
         memcpy(f->theta, start, d * sizeof *start);
     else
         memset(f->theta, 0, d * sizeof *f->theta);
-    if (!minimise(f, NOISE_NORMAL, d, first_promise, &value, fit) ||
-        !minimise(f, NOISE_MIXTURE, d, second_promise, &value, fit))
+    struct patience patience = {.promise = 1e-3, .share = 0.001, .hopeless = INFINITY};
+    bool ok = minimise(f, NOISE_NORMAL, d, patience, fit);
+    fit->theta = f->theta;
+    return ok ? RF_OK : RF_NUMERICAL;
+}
+
+enum rf_status fitter_fit_mixture(struct fitter *f, double hopeless, struct fit *fit)
+{
+    size_t d = (size_t)f->wiring->n_parameters, iterations = fit->iterations;
+    *fit = (struct fit){.n_parameters = d, .stride = f->stride, .iterations = iterations};
+    /* log det ≥ 0, so log Z ≤ −F. */
+    struct patience patience = {.promise = 1e-5, .hopeless = -hopeless};
+    if (!minimise(f, NOISE_MIXTURE, d, patience, fit))
+        return RF_NUMERICAL;
+    double value = misfit_of_readings(f, NOISE_MIXTURE) + half_square(f->theta, d);
+    normal_equations(f, CURVATURE_INLIERS, d);
+    if (!cholesky_factor(f->hessian, d, f->stride))
         return RF_NUMERICAL;
     fit->penalty = half_square(f->theta, d);
     fit->log_likelihood = fit->penalty - value;
@@ -312,6 +387,30 @@ enum rf_status fitter_fit(struct fitter *f, const struct wiring *wiring, const d
     fit->weights = f->weights;
     fit->z = f->z;
     return isfinite(fit->log_evidence) ? RF_OK : RF_NUMERICAL;
+}
+
+double fitter_log_posterior(struct fitter *f)
+{
+    return -misfit_of_readings(f, NOISE_MIXTURE) -
+           half_square(f->theta, (size_t)f->wiring->n_parameters);
+}
+
+void fitter_resume(struct fitter *f, const double theta[], struct fit *fit)
+{
+    size_t d = (size_t)f->wiring->n_parameters;
+    *fit = (struct fit){.n_parameters = d, .stride = f->stride};
+    memcpy(f->theta, theta, d * sizeof *theta);
+}
+
+enum rf_status fitter_fit(struct fitter *f, const struct wiring *wiring, const double start[],
+                          struct fit *fit)
+{
+    enum rf_status status = fitter_analyse(f, wiring);
+    if (status == RF_OK)
+        status = fitter_fit_normal(f, start, fit);
+    if (status == RF_OK)
+        status = fitter_fit_mixture(f, -INFINITY, fit);
+    return status;
 }
 
 double fit_parameter_sigma(const struct fit *fit, size_t j, double scratch[])

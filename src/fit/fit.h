@@ -38,8 +38,10 @@ struct fit {
     double log_likelihood; /* at θ̂ */
     double penalty;        /* ½ |θ̂|² */
     double log_det;        /* of I + JᵀWJ */
+    double objective;      /* F of the stage fitted last, constants left out by the normal one */
     size_t iterations;
     bool converged;
+    bool abandoned; /* log Z would stay below `hopeless`; the rest holds where the fit stopped */
     size_t n_parameters;
     const double *theta;  /* θ̂ */
     const double *factor; /* Cholesky factor of I + JᵀWJ, row stride fit.stride */
@@ -54,6 +56,18 @@ struct fit {
  */
 enum rf_status fitter_fit(struct fitter *fitter, const struct wiring *wiring, const double start[],
                           struct fit *fit);
+
+/*
+ * The same in steps: analyse a wiring, fit it with normal noise from `start`, and with the mixture
+ * from where the first ended. The second gives up once log Z is as good as certain to stay below
+ * `hopeless` (-INFINITY: never). To resume a fit later, analyse again and `fitter_resume` at its θ.
+ */
+enum rf_status fitter_analyse(struct fitter *fitter, const struct wiring *wiring);
+enum rf_status fitter_fit_normal(struct fitter *fitter, const double start[], struct fit *fit);
+enum rf_status fitter_fit_mixture(struct fitter *fitter, double hopeless, struct fit *fit);
+/* log-likelihood − ½|θ|² of the mixture where the last fit of either stage ended. */
+double fitter_log_posterior(struct fitter *fitter);
+void fitter_resume(struct fitter *fitter, const double theta[], struct fit *fit);
 
 /* Standard deviation of θ_j under the fit, from its factor; `scratch` holds n_parameters. */
 double fit_parameter_sigma(const struct fit *fit, size_t j, double scratch[]);
