@@ -131,12 +131,11 @@ static double misfit_of_readings(struct fitter *f, enum noise noise)
             sum -= f->log_open_with_path;
         } else {
             double mean = forward_mean(f->forward, o->measurement);
-            double log_likelihood = log_mixture(o, mean, &f->weights[i], &f->z[i]);
             if (noise == NOISE_NORMAL) {
-                f->weights[i] = 1.0;
+                f->z[i] = (o->ohms - mean) / o->sigma;
                 sum += 0.5 * f->z[i] * f->z[i];
             } else {
-                sum -= log_likelihood;
+                sum -= log_mixture(o, mean, &f->weights[i], &f->z[i]);
             }
         }
     }
