@@ -49,6 +49,7 @@ struct ranking {
     bool screen;
     double best;          /* the largest log weight so far */
     double *theta;        /* BATCH × stride: where the first stage ended */
+    double *common;       /* stride: where it ended without a fault, from where the others start */
     size_t stride;
     struct ordered *order; /* [BATCH] */
 };
@@ -86,8 +87,10 @@ static enum rf_status fit_batch_normal(struct ranking *r, size_t first, size_t n
         r->order[i] = (struct ordered){-INFINITY, i};
         if (r->screen && log_share(candidate) == -INFINITY)
             continue;
-        if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, NULL, &fit) != RF_OK)
+        if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, r->common, &fit) != RF_OK)
             return report_failure(r, candidate, error);
+        if (candidate->hypothesis.n_faults == 0)
+            memcpy(r->common, fit.theta, fit.n_parameters * sizeof *fit.theta);
         memcpy(r->theta + i * r->stride, fit.theta, fit.n_parameters * sizeof *fit.theta);
         r->order[i].log_weight = log_share(candidate) + fitter_log_posterior(r->fitter);
     }
@@ -197,14 +200,16 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
         .stride = (size_t)ring->map.n_common + FAULTS_AT_ONCE,
     };
     ranking.theta = NEW_ARRAY(double, batch * ranking.stride);
+    ranking.common = NEW_ARRAY(double, ranking.stride);
     ranking.order = NEW_ARRAY(struct ordered, batch);
-    enum rf_status status = ranking.theta == NULL || ranking.order == NULL
+    enum rf_status status = ranking.theta == NULL || ranking.common == NULL || ranking.order == NULL
                                 ? fail_memory(error)
                                 : wiring_init(&ranking.wiring, ring->job, ring->models, error);
     if (status == RF_OK)
         status = fit_all(&ranking, error);
     wiring_finish(&ranking.wiring);
     free(ranking.theta);
+    free(ranking.common);
     free(ranking.order);
     if (status != RF_OK)
         return status;
