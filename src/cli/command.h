@@ -83,6 +83,7 @@ enum rf_class each_job(const struct invocation *invocation, job_callback *one_jo
 /* The one job of a file that must hold one, the caller's to destroy. */
 enum rf_status read_one_job(const char *path, struct rf_job **job, struct rf_error *error);
 
-extern const struct command command_check, command_diagnose, command_expect;
+extern const struct command command_check, command_diagnose, command_expect, command_simulate,
+    command_answer;
 
 #endif

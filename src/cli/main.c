@@ -14,9 +14,7 @@
 #include <unistd.h>
 
 static const struct command *const commands[] = {
-    &command_diagnose,
-    &command_check,
-    &command_expect,
+    &command_diagnose, &command_check, &command_expect, &command_simulate, &command_answer,
 };
 
 enum {
@@ -73,7 +71,12 @@ static enum rf_class help(void)
 static enum rf_class help_command(const struct command *command)
 {
     struct text out = {0};
-    text_addf(&out, "usage: ringfettle %s [OPTION…] %s\n\n", command->name, command->operands);
+    struct text usage = {0};
+    text_addf(&usage, "ringfettle %s [OPTION…] %s", command->name, command->operands);
+    if (!usage.failed)
+        wrap_words(&out, "usage: ", "       ", usage.bytes);
+    text_add(&out, "\n");
+    text_finish(&usage);
     for (const char *at = command->about; *at != '\0';) {
         const char *end = strstr(at, "\n\n");
         size_t length = end != NULL ? (size_t)(end - at) : strlen(at);
