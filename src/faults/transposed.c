@@ -15,16 +15,23 @@ static void enumerate(const struct rf_job *job, const struct rf_models *models,
         }
 }
 
-/* Where one of the two is broken, the other lands on whatever terminal the broken one left; that
- * node is no longer known, and the other stays where it is: no current went through either. */
+/* Beside a broken conductor the other changes its terminal all the same; the nodes of a place, or
+ * of a tee, lie side by side in the order of the conductors. */
 static void apply(const struct fault *fault, struct wiring *wiring, double median, int parameter)
 {
     (void)median;
     (void)parameter;
-    struct wire *first = pieces_far_end(wiring, fault->run, pair_members[fault->pair].first);
-    struct wire *second = pieces_far_end(wiring, fault->run, pair_members[fault->pair].second);
-    if (first == NULL || second == NULL)
+    const struct pair_members pair = pair_members[fault->pair];
+    struct wire *first = pieces_far_end(wiring, fault->run, pair.first);
+    struct wire *second = pieces_far_end(wiring, fault->run, pair.second);
+    int across = (int)pair.second - (int)pair.first;
+    if (first == NULL || second == NULL) {
+        if (first != NULL)
+            first->b += across;
+        if (second != NULL)
+            second->b -= across;
         return;
+    }
     int kept = first->b;
     first->b = second->b;
     second->b = kept;
