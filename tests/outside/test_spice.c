@@ -25,7 +25,7 @@ struct reading_pair {
     bool path;       /* by plain.h's resistors */
     double ohms;     /* ours, without offsets */
     double spice;    /* NAN: not read */
-    char text[160];  /* what it is a reading of */
+    char text[256];  /* what it is a reading of */
 };
 
 static struct {
@@ -178,13 +178,17 @@ static void read_both(const struct ring_case *c, size_t setup, enum spot spot, s
     const char *name = setups[setup].name, *key = spot == SPOT_POINT ? NULL : spot_keys[spot];
     double ours = read_wiring(c->wiring, name, spot, place);
     *pair = (struct reading_pair){.open = ours < 0.0, .ohms = ours, .spice = NAN};
-    const struct fault *f = &c->faults->faults[0];
-    snprintf(pair->text, sizeof pair->text,
-             "ring %d, %zu fault(s), %s run %zu place %zu other %zu conductor %d pair %d value %g: "
-             "%s %s",
-             c->number, c->faults->n_faults, f->family->name, f->run, f->place, f->other,
-             f->conductor, (int)f->pair, c->value, name,
-             key != NULL ? key : c->ring->places[place].id);
+    size_t written = 0;
+    for (size_t i = 0; i < c->faults->n_faults && written < sizeof pair->text; i++) {
+        const struct fault *f = &c->faults->faults[i];
+        written += (size_t)snprintf(pair->text + written, sizeof pair->text - written,
+                                    "%s (run %zu, conductor %d, place %zu, other %zu, pair %d), ",
+                                    f->family->name, f->run, f->conductor, f->place, f->other,
+                                    (int)f->pair);
+    }
+    if (written < sizeof pair->text)
+        snprintf(pair->text + written, sizeof pair->text - written, "ring %d, value %g, %s %s",
+                 c->number, c->value, name, key != NULL ? key : c->ring->places[place].id);
     plain_state(&plain, &c->ring->job, c->models, c->faults, c->value, name);
     plain_probe(&plain, key, place, &a, &b);
     write_circuit(&plain, a, b, pair);
@@ -361,15 +365,29 @@ START_TEST(every_set_up_and_family)
 }
 END_TEST
 
-/* Families whose order does not matter, at different places: two at a time. */
+/* Two faults of different families, at different places where both are about fronts. */
 static bool combines(const struct fault *one, const struct fault *other)
 {
-    static const char *const fit[] = {"break",    "joint", "contact",  "switched_off", "load",
-                                      "reversal", "short", "parallel", "interconnection"};
+    static const char *const fit[] = {"break",    "joint", "contact",  "switched_off",    "load",
+                                      "reversal", "short", "parallel", "interconnection",
+                                      "transposed"};
     int known = 0;
     for (size_t i = 0; i < sizeof fit / sizeof *fit; i++)
         known += is_family(one, fit[i]) + is_family(other, fit[i]);
-    return known == 2 && (one->place == 0 || one->place != other->place);
+    return known == 2 && one->family != other->family &&
+           (one->place == 0 || one->place != other->place);
+}
+
+/* A hypothesis is a set: in either order. */
+static void in_either_order(struct ring_case *c, const struct fault *one, const struct fault *other,
+                            uint64_t *seed)
+{
+    const struct hypothesis orders[] = {{.faults = {*one, *other}, .n_faults = 2},
+                                        {.faults = {*other, *one}, .n_faults = 2}};
+    for (size_t i = 0; i < 2; i++) {
+        c->faults = &orders[i];
+        wire_and_read(c, seed);
+    }
 }
 
 START_TEST(two_faults_at_once)
@@ -386,22 +404,32 @@ START_TEST(two_faults_at_once)
         for (size_t family = 0; family < n_fault_families; family++)
             fault_families[family]->enumerate(&ring.job, &models, collect, &members);
         for (size_t found = 0, tries = 0; found < 10 && tries < 20000; tries++) {
-            struct hypothesis faults = {.n_faults = 2};
-            for (size_t i = 0; i < 2; i++)
-                faults.faults[i] = members.faults[random_below(&seed, members.n)];
-            if (!combines(&faults.faults[0], &faults.faults[1]))
+            const struct fault *one = &members.faults[random_below(&seed, members.n)];
+            const struct fault *other = &members.faults[random_below(&seed, members.n)];
+            if (!combines(one, other))
                 continue;
-            found++;
             struct ring_case c = {.ring = &ring,
                                   .models = &models,
-                                  .faults = &faults,
                                   .value = next_value(&seed, count++),
                                   .number = (int)n};
-            wire_and_read(&c, &seed);
+            in_either_order(&c, one, other, &seed);
+            found++;
+        }
+        /* In one run: a conductor broken, or with a joint, and landed on another's terminal. */
+        for (int conductor = 0; conductor < 3; conductor++) {
+            const struct fault transposed = {
+                .family = &fault_family_transposed, .run = 2, .pair = PAIR_LE};
+            struct fault other = {.run = 2, .conductor = conductor};
+            other.family = n == 4 ? &fault_family_break : &fault_family_joint;
+            struct ring_case c = {.ring = &ring,
+                                  .models = &models,
+                                  .value = next_value(&seed, count++),
+                                  .number = (int)n};
+            in_either_order(&c, &transposed, &other, &seed);
         }
     }
-    ck_assert_uint_eq(count, 20);
     finish_batch();
+    ck_assert_uint_eq(count, 2 * 13);
     report();
 }
 END_TEST
