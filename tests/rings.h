@@ -4,8 +4,8 @@
 
 /*
  * Small rings and models made by hand, for tests of rooms below the reading of files. All lengths
- * are invented. Resistances are the maxima of IEC 60228:2004, table 1 (class 1, plain copper, at 20 °C;
- * from memory); tests compare ways of computing, so they would pass with any others.
+ * are invented. Resistances are the maxima of IEC 60228:2004, table 1 (class 1, plain copper, at
+ * 20 °C; from memory); tests compare ways of computing, so they would pass with any others.
  */
 
 #include "job/job.h"
@@ -26,7 +26,8 @@ struct small_ring {
     char source[16];
 };
 
-static inline void ring_name(struct small_ring *ring, size_t place, const char *letter, size_t number)
+static inline void ring_name(struct small_ring *ring, size_t place, const char *letter,
+                             size_t number)
 {
     snprintf(ring->ids[place], RING_ID, "%s%u", letter, (unsigned)(number % 1000u));
     ring->places[place].id = ring->ids[place];

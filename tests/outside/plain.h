@@ -3,10 +3,10 @@
 #define TESTS_OUTSIDE_PLAIN_H
 
 /*
- * A second reading of what the set-ups and the families of faults are said to do, written from their
- * definitions and sharing no code with src/network or src/faults: it takes no wiring and changes
- * none, but states for a recorded ring, its faults and a set-up which resistors there are. A
- * resistor of 0 Ω joins two nodes. Only the values that say which fault it is are taken over.
+ * A second reading of what the set-ups and the families of faults are said to do, written from
+ * their definitions and sharing no code with src/network or src/faults: it takes no wiring and
+ * changes none, but states for a recorded ring, its faults and a set-up which resistors there are.
+ * A resistor of 0 Ω joins two nodes. Only the values that say which fault it is are taken over.
  */
 
 #include "faults/fault.h"
@@ -71,7 +71,8 @@ static inline int plain_other(enum pair pair, int conductor)
     return other[pair][conductor];
 }
 
-static inline double plain_ohm_per_m(const struct plain *plain, double live, double cpc, int conductor)
+static inline double plain_ohm_per_m(const struct plain *plain, double live, double cpc,
+                                     int conductor)
 {
     double mm2 = conductor < 2 ? live : isnan(cpc) ? 1.5 : cpc, at_20 = NAN;
     for (size_t i = 0; i < plain->models->n_sizes; i++)
@@ -222,9 +223,9 @@ static inline void plain_state(struct plain *plain, const struct rf_job *job,
                                double value, const char *setup)
 {
     static const char *const known[] = {
-        "none",     "break",      "joint", "contact",  "switched_off", "load",
-        "spur",     "reversal",   "short", "parallel", "transposed",   "interconnection",
-        "size",     "wrong_leg",  "not_crossed",       "bad_link",     "not_nulled"};
+        "none", "break",     "joint",       "contact",  "switched_off", "load",
+        "spur", "reversal",  "short",       "parallel", "transposed",   "interconnection",
+        "size", "wrong_leg", "not_crossed", "bad_link", "not_nulled"};
     *plain = (struct plain){
         .job = job, .models = models, .faults = faults, .value = value, .setup = setup};
     for (size_t i = 0; i < faults->n_faults; i++) {
@@ -247,7 +248,8 @@ static inline void plain_state(struct plain *plain, const struct rf_job *job,
 }
 
 /* Where the meter is put: a key of a job file ("board", "l" …), or NULL with the place of a point. */
-static inline void plain_probe(const struct plain *plain, const char *key, size_t place, int *a, int *b)
+static inline void plain_probe(const struct plain *plain, const char *key, size_t place, int *a,
+                               int *b)
 {
     const char *setup = plain->setup;
     size_t in = plain->job->n_ring + 1;

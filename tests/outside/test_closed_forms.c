@@ -3,14 +3,14 @@
  * Rings small and sound enough for a formula.
  *
  * Source of the crossed forms: "Resistance readings for Step 3 of the ring final circuit test",
- * Wiring Matters 89, IET, March 2022. With r1 and r2 the two conductors end to end and x the fraction
- * of the ring behind the point, a crossed reading is two paths in parallel, x r1 + (1−x) r2 and
- * (1−x) r1 + x r2, of sum r1 + r2 and product r1 r2 + (x − x²)(r1 − r2)²:
+ * Wiring Matters 89, IET, March 2022. With r1 and r2 the two conductors end to end and x the
+ * fraction of the ring behind the point, a crossed reading is two paths in parallel, x r1 + (1−x)
+ * r2 and (1−x) r1 + x r2, of sum r1 + r2 and product r1 r2 + (x − x²)(r1 − r2)²:
  *
  *     R(x) = [r1 r2 + (x − x²)(r1 − r2)²] / (r1 + r2)
  *
- * r1 r2 / (r1 + r2) at the board (x = 0 and 1), highest mid-ring, (r1 + r2)/4; for equal conductors
- * (r1 + r2)/4 everywhere. The other forms are series sums: common practice, no source.
+ * r1 r2 / (r1 + r2) at the board (x = 0 and 1), highest mid-ring, (r1 + r2)/4; for equal
+ * conductors (r1 + r2)/4 everywhere. The other forms are series sums: common practice, no source.
  */
 #include "../meter.h"
 
@@ -72,7 +72,8 @@ START_TEST(equal_conductors_crossed)
 {
     lay(2.5, 2.5);
     for (size_t p = 0; p < N_PAIRS; p++) {
-        double quarter = (end_to_end(pair_members[p].first) + end_to_end(pair_members[p].second)) / 4;
+        double quarter =
+            (end_to_end(pair_members[p].first) + end_to_end(pair_members[p].second)) / 4;
         ck_assert_double_gt(quarter, 0.1);
         ck_assert_double_eq_tol(read_pair("cross", p, SPOT_BOARD, 0), quarter, 1e-13);
         for (size_t place = 1; place <= N; place++)

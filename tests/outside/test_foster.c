@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /*
- * Theorems that hold for every network of resistors, tried on seeded random ones with links, parallel
- * edges, self loops and several components.
+ * Theorems that hold for every network of resistors, tried on seeded random ones with links,
+ * parallel edges, self loops and several components.
  */
 #include "network/loops.h"
 
@@ -74,7 +74,8 @@ static void analyse(const struct network *network)
     for (size_t e = 0; e < network->n; e++)
         probes[e] = (struct probe){network->edges[e].a, network->edges[e].b};
     ck_assert_int_eq(
-        loops_analyse(loops, network->nodes, network->edges, network->n, probes, network->n), RF_OK);
+        loops_analyse(loops, network->nodes, network->edges, network->n, probes, network->n),
+        RF_OK);
 }
 
 static void factor(const double r_of_edge[])

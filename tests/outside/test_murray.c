@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /*
- * A Murray loop test worked in a handbook: N. Hawkins, "Hawkins Electrical Guide", vol. 3, Fig. 597.
- * A wire of 16.46 Ω a mile is looped with a good one, 54.07 Ω together; a slide wire of 1000
+ * A Murray loop test worked in a handbook: N. Hawkins, "Hawkins Electrical Guide", vol. 3, Fig.
+ * 597. A wire of 16.46 Ω a mile is looped with a good one, 54.07 Ω together; a slide wire of 1000
  * divisions bridges the loop, the battery lies between its slider and the earth. It balances at
  * 332, so the earth lies 332/1000 of the loop off, 54.07 × 0.332 / 16.46 = 1.0906 miles.
  *

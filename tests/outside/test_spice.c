@@ -1,10 +1,11 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /*
- * The network solver beside ngspice (Debian package `ngspice`; a general-purpose circuit simulator after
- * L. W. Nagel, "SPICE2: A Computer Program to Simulate Semiconductor Circuits", 1975): rings of one to
- * eight points with spurs, spurs on spurs and junction boxes, every set-up, every family of faults,
- * parameters over four decades. The circuits ngspice gets are stated by plain.h, a second reading
- * of the definitions, so that a family which wires something else is seen as well as a wrong sum.
+ * The network solver beside ngspice (Debian package `ngspice`; a general-purpose circuit simulator
+ * after L. W. Nagel, "SPICE2: A Computer Program to Simulate Semiconductor Circuits", 1975): rings
+ * of one to eight points with spurs, spurs on spurs and junction boxes, every set-up, every family
+ * of faults, parameters over four decades. The circuits ngspice gets are stated by plain.h, a
+ * second reading of the definitions, so that a family which wires something else is seen as well
+ * as a wrong sum.
  *
  * Each reading is 1 A into a copy of the circuit whose other probe is ground; a shunt of a known
  * conductance bears the current where there is no path. Rings are random, seeded and invented.
@@ -20,12 +21,12 @@ enum { BATCH = 120, MEMBERS = 2, MEMBERS_MAX = 2048 };
 static const double shunt_siemens = 1e-9, open_ohms = 1e8, tolerance = 1e-6;
 
 struct reading_pair {
-    bool open;       /* ours */
-    bool joined;     /* the probes are one node: nothing to simulate */
-    bool path;       /* by plain.h's resistors */
-    double ohms;     /* ours, without offsets */
-    double spice;    /* NAN: not read */
-    char text[256];  /* what it is a reading of */
+    bool open;      /* ours */
+    bool joined;    /* the probes are one node: nothing to simulate */
+    bool path;      /* by plain.h's resistors */
+    double ohms;    /* ours, without offsets */
+    double spice;   /* NAN: not read */
+    char text[256]; /* what it is a reading of */
 };
 
 static struct {
@@ -90,7 +91,8 @@ static void compare(struct reading_pair *pair)
     }
     ck_assert_msg(isfinite(pair->spice), "%s: ngspice gave no value", pair->text);
     if (pair->open) {
-        ck_assert_msg(pair->spice > open_ohms, "%s: ours open, ngspice %.9g", pair->text, pair->spice);
+        ck_assert_msg(pair->spice > open_ohms, "%s: ours open, ngspice %.9g", pair->text,
+                      pair->spice);
         seen.open++;
         return;
     }
@@ -222,7 +224,8 @@ static void read_everywhere(const struct ring_case *c, uint64_t *seed)
     for (size_t setup = 0; setup < N_SETUPS; setup++) {
         static const enum spot at_board[] = {SPOT_L, SPOT_N, SPOT_E, SPOT_BOARD, SPOT_OUT, SPOT_IN};
         size_t first = random_below(seed, 6), place = choose_point(c, seed);
-        bool point = (setups[setup].spots & (1u << SPOT_POINT)) != 0 && place < c->ring->job.n_places;
+        bool point =
+            (setups[setup].spots & (1u << SPOT_POINT)) != 0 && place < c->ring->job.n_places;
         if (point)
             read_both(c, setup, SPOT_POINT, place);
         /* One of the spots at the board; after a point only now and then. */
@@ -312,8 +315,8 @@ static void name_families(struct rf_models *models)
     models_for_tests(models);
     models->n_families = n_fault_families;
     for (size_t i = 0; i < n_fault_families; i++)
-        models->families[i] = (struct family_prior){.name = fault_families[i]->name,
-                                                    .parameter = {1.0, 1.0}};
+        models->families[i] =
+            (struct family_prior){.name = fault_families[i]->name, .parameter = {1.0, 1.0}};
 }
 
 static struct rf_models models;
@@ -368,9 +371,9 @@ END_TEST
 /* Two faults of different families, at different places where both are about fronts. */
 static bool combines(const struct fault *one, const struct fault *other)
 {
-    static const char *const fit[] = {"break",    "joint", "contact",  "switched_off",    "load",
-                                      "reversal", "short", "parallel", "interconnection",
-                                      "transposed"};
+    static const char *const fit[] = {
+        "break",    "joint", "contact",  "switched_off",    "load",
+        "reversal", "short", "parallel", "interconnection", "transposed"};
     int known = 0;
     for (size_t i = 0; i < sizeof fit / sizeof *fit; i++)
         known += is_family(one, fit[i]) + is_family(other, fit[i]);

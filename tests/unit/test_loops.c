@@ -55,8 +55,8 @@ static void tear_down(void)
 }
 
 /* The reading between a and b; r by edge, Ω. */
-static double read_between(size_t nodes, const struct edge edges[], size_t n, const double r[], int a,
-                           int b)
+static double read_between(size_t nodes, const struct edge edges[], size_t n, const double r[],
+                           int a, int b)
 {
     struct probe probe = {a, b};
     ck_assert_int_eq(loops_analyse(loops, nodes, edges, n, &probe, 1), RF_OK);
@@ -137,7 +137,7 @@ END_TEST
 /* Links join nodes, alone, in loops of nothing but links, and across an edge of resistance. */
 START_TEST(links_join_nodes)
 {
-    const struct edge edges[] = {{0, 1, false}, {1, 2, true}, {2, 3, true}, {3, 1, true},
+    const struct edge edges[] = {{0, 1, false}, {1, 2, true},  {2, 3, true}, {3, 1, true},
                                  {3, 4, false}, {1, 2, false}, {4, 4, true}};
     const double r[] = {2, 0, 0, 0, 3, 7, 0};
     ck_assert_double_eq_tol(read_between(5, edges, 7, r, 0, 4), 5.0, 1e-14);
@@ -211,8 +211,8 @@ START_TEST(refuses_resistances)
         for (size_t i = 0; i < sizeof bad / sizeof *bad; i++) {
             double r[] = {1, 5, 1};
             r[at] = bad[i];
-            ck_assert_msg(loops_factor(loops, r) == RF_NUMERICAL, "%g Ω in edge %zu passed",
-                          bad[i], at);
+            ck_assert_msg(loops_factor(loops, r) == RF_NUMERICAL, "%g Ω in edge %zu passed", bad[i],
+                          at);
         }
     const double good[] = {1, 5, 1};
     ck_assert_int_eq(loops_factor(loops, good), RF_OK);

@@ -10,7 +10,8 @@
 enum { MOST = 128 };
 
 /*
- * out P1 P2 P3(junction box) in = places 0 … 4. S1 (5) on P2, S2 (6) on S1, S3 (7) on out, S4 (8) on in.
+ * out P1 P2 P3(junction box) in = places 0 … 4. S1 (5) on P2, S2 (6) on S1, S3 (7) on out, S4 (8)
+ * on in.
  */
 enum { OUT, P1, P2, P3, IN, S1, S2, S3, S4 };
 static struct small_ring ring;
@@ -104,8 +105,13 @@ START_TEST(parameters_have_their_places)
         seen[map->runs + run] = true;
     }
     ck_assert_double_eq_tol(the_piece(1, LINE)->ohms, 5 * LIVE, 1e-15);
-    const int others[] = {map->conductor[LINE], map->conductor[NEUTRAL], map->conductor[CPC],
-                          map->gain, map->lead, map->face, map->wander};
+    const int others[] = {map->conductor[LINE],
+                          map->conductor[NEUTRAL],
+                          map->conductor[CPC],
+                          map->gain,
+                          map->lead,
+                          map->face,
+                          map->wander};
     const double sigma[] = {0.02, 0.02, 0.02, 0.01, 0.01, 0.01, 0.03};
     for (int i = 0; i < 7; i++) {
         ck_assert(others[i] >= 0 && others[i] < 15 && !seen[others[i]]);
@@ -217,11 +223,11 @@ START_TEST(what_each_set_up_reads)
             char letter = "lne"[p];
             double per_m = p == 2 ? EARTH : LIVE, alone = spots[s].off * per_m;
             snprintf(name, sizeof name, "lead_out_%c", letter);
-            ck_assert_double_eq_tol(read_spot(name, SPOT_POINT, spots[s].place),
-                                    per_m * x + alone, 1e-12);
+            ck_assert_double_eq_tol(read_spot(name, SPOT_POINT, spots[s].place), per_m * x + alone,
+                                    1e-12);
             snprintf(name, sizeof name, "lead_in_%c", letter);
-            ck_assert_double_eq_tol(read_spot(name, SPOT_POINT, spots[s].place),
-                                    per_m * y + alone, 1e-12);
+            ck_assert_double_eq_tol(read_spot(name, SPOT_POINT, spots[s].place), per_m * y + alone,
+                                    1e-12);
         }
         snprintf(name, sizeof name, "cross_%s", pairs[p].suffix);
         ck_assert_double_eq_tol(read_spot(name, SPOT_BOARD, 0), 22 * a * b / both, 1e-12);
@@ -265,8 +271,7 @@ START_TEST(links_that_are_not_as_they_should_be)
     wiring.links[cross].in = LINK_MADE;
     wiring.links[cross].not_crossed = true;
     ck_assert_double_eq(read_spot("cross_ln", SPOT_BOARD, 0), 0.0);
-    ck_assert_double_eq_tol(read_spot("cross_ln", SPOT_POINT, P1), 8.0 * 36.0 / 44.0 * LIVE,
-                            1e-13);
+    ck_assert_double_eq_tol(read_spot("cross_ln", SPOT_POINT, P1), 8.0 * 36.0 / 44.0 * LIVE, 1e-13);
 }
 END_TEST
 
