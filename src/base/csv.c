@@ -70,6 +70,11 @@ void csv_close(struct csv_reader *reader)
     free(reader);
 }
 
+void csv_begin_behind(struct csv_reader *reader, size_t rows)
+{
+    reader->next_number = reader->next_line = rows + 1;
+}
+
 void csv_set_limit(struct csv_reader *reader, size_t bytes)
 {
     reader->limit = bytes;

@@ -45,6 +45,9 @@ struct csv_reader *csv_open_text(const char *text, size_t length, char separator
 struct csv_reader *csv_open_file(FILE *file, char separator, const char *source);
 void csv_close(struct csv_reader *reader); /* takes NULL */
 
+/* For a reader whose caller has read the first n rows, a line each, elsewhere: numbers go on. */
+void csv_begin_behind(struct csv_reader *reader, size_t rows);
+
 /* No row may be longer than this (1 MiB unless set). */
 void csv_set_limit(struct csv_reader *reader, size_t bytes);
 

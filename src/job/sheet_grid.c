@@ -291,6 +291,15 @@ bool sheet_number(const char *word, char decimal, char *json, size_t size)
     return word[i] == '\0';
 }
 
+bool sheet_is_over_range(const char *word)
+{
+    static const char *const words[] = {"open", "OL", "O/L", "o/c", "OC", ">99.9", ">99,9"};
+    for (size_t i = 0; i < sizeof words / sizeof words[0]; i++)
+        if (sheet_same_word(words[i], word))
+            return true;
+    return false;
+}
+
 /* The decimal mark of a word that is a number with one; else '\0'. */
 static char mark_of(const char *word)
 {

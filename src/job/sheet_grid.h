@@ -72,6 +72,9 @@ bool sheet_column_has_numbers(const char *name);
  */
 bool sheet_next_word(const char **at, struct text *word);
 
+/* Whether a word says that the meter was over range: >99.9, OL, o/c, open … */
+bool sheet_is_over_range(const char *word);
+
 /* A number in the sheet's spelling as JSON spells it; false where it is none. */
 bool sheet_number(const char *word, char decimal, char *json, size_t size);
 

@@ -137,15 +137,6 @@ static bool is_unread(const char *text)
            strcmp(text, "\xE2\x80\x94") == 0; /* - and the dashes spreadsheets make of it */
 }
 
-static bool is_over_range(const char *word)
-{
-    static const char *const words[] = {"open", "OL", "O/L", "o/c", "OC", ">99.9", ">99,9"};
-    for (size_t i = 0; i < sizeof words / sizeof words[0]; i++)
-        if (sheet_same_word(words[i], word))
-            return true;
-    return false;
-}
-
 /* A number, or the text as it stands for the job's reader to refuse. */
 static cJSON *number_value(const struct building *building, const char *text)
 {
@@ -192,7 +183,7 @@ static void put_readings(struct building *building, cJSON **into, const char *ke
                 refuse_memory(building);
             else
                 put(building, list, NULL,
-                    is_over_range(building->word.bytes)
+                    sheet_is_over_range(building->word.bytes)
                         ? cJSON_CreateString("open")
                         : number_value(building, building->word.bytes),
                     row, column);
