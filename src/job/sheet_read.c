@@ -333,7 +333,11 @@ static void read_known_row(struct building *building, const struct key_row *key,
     }
     if (need(building, into) == NULL)
         return;
-    if (key->form == TEXT)
+    if (cJSON_GetObjectItemCaseSensitive(*into, key->key) != NULL)
+        building->status = sheet_fail(building->grid, row, 0, building->error,
+                                      "found \"%.80s\", which another row has said; needs it once",
+                                      cell(building, row, 0));
+    else if (key->form == TEXT)
         put_text(building, *into, key->key, row, 1);
     else if (key->form == NUMBER)
         put_number(building, *into, key->key, row, 1);
