@@ -12,6 +12,7 @@
 
 #include <check.h>
 #include <gsl/gsl_errno.h>
+#include <gsl/gsl_statistics.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -395,6 +396,45 @@ START_TEST(answers)
 }
 END_TEST
 
+/* Over many seeds and repeats, what goes wrong with readings is as frequent as the model says, so
+ * the many generators are as good as one. Counted as misread is what is more than 5 σ off the
+ * median of the repeats; the chance that U puts a misread nearer is taken off. */
+START_TEST(answers_over_seeds)
+{
+    enum { SEEDS = 500, REPEATS = 40 };
+    struct rf_job *ring = read_ring(ring_text);
+    struct measurement measurements[REPEATS];
+    size_t repeats[REPEATS];
+    double open = 0, far = 0, n = SEEDS * REPEATS, c = log(99.9 / 0.05);
+    double near = 5 * instrument_sigma(&models->instrument, 2);
+    struct simulation simulation = {.given = true, .hypothesis = neutral_joint(1), .value = {2}};
+    for (size_t i = 0; i < REPEATS; i++) {
+        measurements[i] = (struct measurement){.setup = setup_find("end_to_end"), .spot = SPOT_N};
+        repeats[i] = i;
+    }
+    for (simulation.seed = 0; simulation.seed < SEEDS; simulation.seed++) {
+        struct truth *truth = simulate_on(ring, &simulation);
+        struct shown shown[REPEATS];
+        ck_assert(truth_answers(truth, measurements, repeats, REPEATS, shown, NULL) == RF_OK);
+        double values[REPEATS];
+        size_t finite = 0;
+        for (size_t i = 0; i < REPEATS; i++) {
+            open += shown[i].open;
+            if (!shown[i].open)
+                values[finite++] = shown[i].ohms;
+        }
+        double middle = gsl_stats_median(values, 1, finite);
+        for (size_t i = 0; i < finite; i++)
+            far += fabs(values[i] - middle) > near;
+        truth_destroy(truth);
+    }
+    double unnoticed = log((2 + near) / (2 - near)) / (1 + c);
+    assert_share(open, n, 0.001);
+    assert_share(far, n, 0.999 * 0.01 * (1 - unnoticed));
+    rf_job_destroy(ring);
+}
+END_TEST
+
 /* Written and read again: the same bytes, the same answers, the same spots; for any family. */
 START_TEST(truth_round_trip)
 {
@@ -541,6 +581,7 @@ int main(void)
     tcase_add_test(tests, repeats_and_what_is_kept);
     tcase_add_test(tests, two_defects);
     tcase_add_test(tests, answers);
+    tcase_add_test(tests, answers_over_seeds);
     tcase_add_test(tests, truth_round_trip);
     tcase_add_test(tests, truth_refused);
     tcase_add_test(tests, looks);
