@@ -317,6 +317,9 @@ struct patience {
 /* What is still to come may be more than one step promises, but hardly by so much. */
 static const double promise_kept = 10.0, promise_slack = 1.0;
 
+/* A decrease of F, promised by the step before. */
+static const double near_optimum = 0.1;
+
 /*
  * Minimises F from f->theta. On return means, gradients and weights are those at f->theta.
  * False: the arithmetic failed.
@@ -324,10 +327,13 @@ static const double promise_kept = 10.0, promise_slack = 1.0;
 static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patience patience,
                      struct fit *fit)
 {
-    double value = objective(f, noise, f->theta, d);
+    double value = objective(f, noise, f->theta, d), promise = INFINITY;
     fit->converged = false;
     for (int iteration = 0; isfinite(value); iteration++) {
-        double promise = newton_step(f, noise == NOISE_MIXTURE ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
+        /* Longer steps only once near an optimum: further off they can jump past it, into one that
+         * writes the tell-tale readings off. */
+        bool near = noise == NOISE_MIXTURE && promise < near_optimum;
+        promise = newton_step(f, near ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
         if (promise < 0.0)
             return false;
         fit->objective = value;
