@@ -8,8 +8,9 @@
  *   first, three     the true fault is first, among the first three; exact ties go by enumeration
  *                    order
  *   family           the first-ranked fault is of the true one's family
- *   log posterior    mean natural log of the confidence that the true fault has; once as it is and
- *                    once with nothing below 0.001, which is not listed
+ *   log posterior    mean natural log of the confidence that the true fault has: with nothing below
+ *                    10⁻⁷, since screening gives up what is far below, and with nothing below
+ *                    0.001, which is not listed
  *   calibration      Σ_b n_b/N · |mean confidence in b − share right in b|, over bins b of the
  *                    first-ranked confidence, bounded by 0, .2, .4, .6, .8, .95, 1
  *   misfit           flagged with one defect or none: false alarms; with a second defect added:
@@ -75,7 +76,7 @@ static void count(struct score *score, const struct rf_diagnosis *d, double mill
     score->family += family_of(&d->ranked[0].hypothesis) == family_of(&d->found);
     score->flagged += d->misfit.flag;
     score->hypotheses += d->n_hypotheses;
-    score->log_posterior += log(fmax(d->found_confidence, 1e-300));
+    score->log_posterior += log(fmax(d->found_confidence, 1e-7));
     score->log_listed += log(fmax(d->found_confidence, confidence_shown));
     bin->n++;
     bin->right += right;
