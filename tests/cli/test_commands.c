@@ -31,8 +31,8 @@ START_TEST(expects)
     expect_run(PROGRAM "expect small.json --setups apart_le", 0, "over range", NULL);
     expect_run("sed 's/\"P2\": 0.07/\"P2\": 0.57/' small.json | " PROGRAM "expect -", 0, "* P2",
                NULL);
-    expect_run("cat small.json small.json >two.ndjson; " PROGRAM "expect two.ndjson",
-               2, NULL, "found several jobs; needs one");
+    expect_run("cat small.json small.json >two.ndjson; " PROGRAM "expect two.ndjson", 2, NULL,
+               "found several jobs; needs one");
 }
 END_TEST
 
