@@ -15,7 +15,7 @@
 
 static const struct command *const commands[] = {
     &command_diagnose, &command_check, &command_expect, &command_simulate, &command_answer,
-    &command_record,   &command_convert,
+    &command_record,   &command_convert, &command_new,
 };
 
 enum {

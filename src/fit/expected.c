@@ -59,8 +59,8 @@ static void note_left_out(const struct rf_job *ends, const struct fit *fit,
             left_out[ends->readings[i].spot - SPOT_L] = true;
 }
 
-/* `ends`: the job with its finite end-to-end readings and no others. */
-static enum rf_status fit_ends(const struct rf_job *ends, const struct rf_models *models,
+/* `ends`: the job with the readings that narrow its record, and no others. */
+static enum rf_status fit_readings(const struct rf_job *ends, const struct rf_models *models,
                                struct state *state, bool left_out[N_CONDUCTORS],
                                struct rf_error *error)
 {
@@ -71,7 +71,7 @@ static enum rf_status fit_ends(const struct rf_job *ends, const struct rf_models
     if (status == RF_OK && (fitter = fitter_create(&ring)) == NULL)
         status = fail_memory(error);
     if (status == RF_OK && fitter_fit(fitter, &ring, NULL, &fit) != RF_OK)
-        status = fail(error, RF_NUMERICAL, "%s: the end-to-end readings could not be fitted",
+        status = fail(error, RF_NUMERICAL, "%s: the readings could not be fitted",
                       ends->source);
     if (status == RF_OK) {
         memcpy(state->theta, fit.theta, state->d * sizeof *state->theta);
@@ -98,7 +98,7 @@ static enum rf_status narrow_by_ends(const struct rf_job *job, const struct rf_m
     for (size_t i = 0; i < job->n_readings; i++)
         if (is_end_to_end(&job->readings[i]) && !job->readings[i].open)
             ends.readings[ends.n_readings++] = job->readings[i];
-    enum rf_status status = fit_ends(&ends, models, state, left_out, error);
+    enum rf_status status = fit_readings(&ends, models, state, left_out, error);
     free(ends.readings);
     return status;
 }
@@ -119,20 +119,22 @@ static double mean_sigma(const struct state *state, const double gradient[])
 
 /* The wiring's share of the range goes by the logarithm, as lengths do: a run of unknown length
  * has no negative resistance. */
-static struct expected expect_mean(double mean, double sigma, double noise)
+/* `k`: how many σ the range reaches. */
+static struct expected expect_mean(double mean, double sigma, double noise, double k)
 {
-    double factor = exp(2 * sigma / fmax(mean, sigma));
+    double factor = exp(k * sigma / fmax(mean, sigma));
     double below = mean - mean / factor, above = mean * factor - mean;
     return (struct expected){
         .ohms = fmax(mean, 0),
-        .low = fmax(mean - hypot(below, 2 * noise), 0),
-        .high = mean + hypot(above, 2 * noise),
+        .low = fmax(mean - hypot(below, k * noise), 0),
+        .high = mean + hypot(above, k * noise),
     };
 }
 
 static enum rf_status read_expected(const struct wiring *ring, const struct state *state,
                                     const struct measurement measurements[], size_t n,
-                                    struct expected expected[], struct rf_error *error)
+                                    double k, struct expected expected[],
+                                    struct rf_error *error)
 {
     struct forward *forward = forward_create(ring, measurements, n);
     if (forward == NULL)
@@ -149,7 +151,7 @@ static enum rf_status read_expected(const struct wiring *ring, const struct stat
         }
         double mean = forward_mean(forward, i);
         expected[i] = expect_mean(mean, mean_sigma(state, forward_gradient(forward, i)),
-                                  instrument_sigma(&ring->models->instrument, mean));
+                                  instrument_sigma(&ring->models->instrument, mean), k);
     }
     forward_destroy(forward);
     return status;
@@ -171,7 +173,26 @@ enum rf_status expect_readings(const struct rf_job *job, const struct rf_models 
     if (status == RF_OK && given_ends)
         status = narrow_by_ends(job, models, &state, left_out, error);
     if (status == RF_OK)
-        status = read_expected(&ring, &state, measurements, n, expected, error);
+        status = read_expected(&ring, &state, measurements, n, 2, expected, error);
+    finish_state(&state);
+    wiring_finish(&ring);
+    return status;
+}
+
+enum rf_status expect_next(const struct rf_job *job, const struct rf_models *models,
+                           const struct measurement *measurement, struct expected *expected,
+                           struct rf_error *error)
+{
+    struct wiring ring = {0};
+    struct state state = {0};
+    bool read = job->n_readings > 0;
+    enum rf_status status = wiring_init(&ring, job, models, error);
+    if (status == RF_OK)
+        status = init_state(&state, (size_t)ring.n_parameters, read, error);
+    if (status == RF_OK && read)
+        status = fit_readings(job, models, &state, NULL, error);
+    if (status == RF_OK)
+        status = read_expected(&ring, &state, measurement, 1, 3, expected, error);
     finish_state(&state);
     wiring_finish(&ring);
     return status;

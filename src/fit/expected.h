@@ -24,6 +24,14 @@ enum rf_status expect_readings(const struct rf_job *job, const struct rf_models 
                                struct expected expected[], bool left_out[N_CONDUCTORS],
                                struct rf_error *error);
 
+/*
+ * What the next reading would be on a ring wired as recorded, given its record and all readings
+ * the job has; `low` and `high` are 3 σ here. The job may have no reading.
+ */
+enum rf_status expect_next(const struct rf_job *job, const struct rf_models *models,
+                           const struct measurement *measurement, struct expected *expected,
+                           struct rf_error *error);
+
 /* Whether the job has an end-to-end reading within range. */
 bool has_end_to_end(const struct rf_job *job);
 

@@ -369,7 +369,11 @@ static enum rf_status find_decimal(struct sheet_grid *grid, struct rf_error *err
                 (in_table && sheet_column_has_numbers(sheet_cell_text(head, j))))
                 status = note_marks(&marks, i, j, error);
     }
-    grid->style.decimal = marks.met[1] ? ',' : '.';
+    /* Where no number shows it, semicolons do: they stand where a comma is the decimal mark. */
+    grid->style.decimal = marks.met[1]                    ? ','
+                          : marks.met[0]                  ? '.'
+                          : grid->style.separator == ';' ? ','
+                                                          : '.';
     text_finish(&marks.word);
     text_finish(&marks.first[0]);
     text_finish(&marks.first[1]);
