@@ -16,6 +16,9 @@
  *   misfit           flagged with one defect or none: false alarms; with a second defect added:
  *                    detections. Many a second defect shows in no reading taken
  *
+ *   screening        the largest difference of a confidence with screening and without, over every
+ *                    tenth job
+ *
  * `±` is one standard error. Times are of the processor, one core, in process.
  */
 
@@ -31,13 +34,14 @@
 #include <stdlib.h>
 #include <time.h>
 
-enum { N_BINS = 6, POINTS_TIMED = 10 };
+enum { N_BINS = 6, POINTS_TIMED = 10, UNSCREENED_EVERY = 10 };
 
 static const double bounds[N_BINS + 1] = {0, 0.2, 0.4, 0.6, 0.8, 0.95, 1};
 
 struct score {
     size_t n, first, three, family, flagged, hypotheses;
     double log_posterior, log_listed;
+    double screening; /* largest difference of a confidence without it */
     struct bin {
         size_t n, right;
         double confidence;
@@ -86,6 +90,37 @@ static void count(struct score *score, const struct rf_diagnosis *d, double mill
         score->timed[score->n_timed++] = milliseconds;
 }
 
+static double confidence_of(const struct rf_diagnosis *d, const struct hypothesis *hypothesis)
+{
+    for (size_t i = 0; i < d->n_ranked; i++)
+        if (hypothesis_equal(&d->ranked[i].hypothesis, hypothesis))
+            return d->ranked[i].confidence;
+    return 0;
+}
+
+static double largest_difference(const struct rf_diagnosis *one, const struct rf_diagnosis *other)
+{
+    double largest = 0;
+    for (size_t i = 0; i < one->n_ranked; i++) {
+        const struct ranked *ranked = &one->ranked[i];
+        largest = fmax(largest,
+                       fabs(ranked->confidence - confidence_of(other, &ranked->hypothesis)));
+    }
+    return largest;
+}
+
+static enum rf_status compare_unscreened(struct score *score, const struct rf_diagnosis *d,
+                                         struct rf_error *error)
+{
+    struct rf_diagnosis *whole = NULL;
+    enum rf_status status = diagnose(d->job, d->models, false, &whole, error);
+    if (status == RF_OK)
+        score->screening = fmax(score->screening, fmax(largest_difference(d, whole),
+                                                       largest_difference(whole, d)));
+    rf_diagnosis_destroy(whole);
+    return status;
+}
+
 static enum rf_status run_job(struct score *score, const struct rf_models *models, uint32_t seed,
                               enum ring_plan plan, size_t defects, struct rf_error *error)
 {
@@ -102,6 +137,8 @@ static enum rf_status run_job(struct score *score, const struct rf_models *model
         if (status == RF_OK)
             count(score, diagnosis, now() - start);
     }
+    if (status == RF_OK && seed % UNSCREENED_EVERY == 0)
+        status = compare_unscreened(score, diagnosis, error);
     rf_diagnosis_destroy(diagnosis);
     truth_destroy(truth);
     rf_job_destroy(ring);
@@ -162,6 +199,7 @@ static void print_score(const char *title, struct score *score)
            score->log_posterior / n, score->log_listed / n);
     print_calibration(score);
     print_share("misfit, false alarms", score->flagged, score->n);
+    printf("%-28s %.4f\n", "screening, largest change", score->screening);
     printf("%-28s %.1f ms; %.1f ms for %d points (%zu jobs)\n", "median time",
            median(score->milliseconds, score->n), median(score->timed, score->n_timed),
            POINTS_TIMED, score->n_timed);
