@@ -1,50 +1,83 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "report/text_parts.h"
+#include "report/said.h"
+
+#include "base/memory.h"
 #include "report/words.h"
-#include "report/wrap.h"
 
 #include <math.h>
 #include <stdlib.h>
 
 /* From which chance on something is said, and how many lines of a list. */
-static const double danger_said = 0.10, check_said = 0.02, place_said = 0.02, finding_said = 0.01;
+static const double danger_said = 0.10, check_said = 0.02, finding_said = 0.01;
+const double place_said = 0.02;
 enum { CHECKS_MOST = 6, PLACES_MOST = 5, FINDINGS_MOST = 6, SUSPECTS_MOST = 6, BLIND_INLINE = 3 };
+enum { BLIND_MOST = 12 };
+
+/* --- lines --- */
+
+void said_add(struct said *said, enum line_kind kind, double chance, size_t about,
+              struct text *words)
+{
+    if (said->n == said->capacity && !said->failed) {
+        size_t capacity = said->capacity > 0 ? 2 * said->capacity : 16;
+        struct said_line *lines = realloc(said->lines, capacity * sizeof *lines);
+        if (lines != NULL) {
+            said->lines = lines;
+            said->capacity = capacity;
+        }
+    }
+    if (words->failed || words->bytes == NULL || said->n == said->capacity) {
+        said->failed = true;
+        text_finish(words);
+        return;
+    }
+    said->lines[said->n++] =
+        (struct said_line){.kind = kind, .chance = chance, .about = about, .words = words->bytes};
+    *words = (struct text){0};
+}
+
+static void add_chance(struct said *said, double chance, struct text *words)
+{
+    said_add(said, LINE_CHANCE, chance, 0, words);
+}
+
+static void add_plain(struct said *said, struct text *words)
+{
+    said_add(said, LINE_PLAIN, 0, 0, words);
+}
+
+static void add_plain_words(struct said *said, const char *plain)
+{
+    struct text words = {0};
+    text_add(&words, plain);
+    add_plain(said, &words);
+}
+
+void said_finish(struct said *said)
+{
+    for (size_t i = 0; i < said->n; i++)
+        free(said->lines[i].words);
+    free(said->lines);
+    *said = (struct said){0};
+}
 
 bool shows_no_defect(const struct rf_diagnosis *diagnosis)
 {
     return diagnosis->n_findings > 0 && diagnosis->findings[0].is_none && !diagnosis->misfit.flag;
 }
 
-/* Wraps a text that is finished with. */
-static void paragraph(struct text *out, const char *first, const char *rest, struct text *words)
+bool is_suspect(const struct rf_diagnosis *diagnosis, size_t reading)
 {
-    if (!words->failed && words->bytes != NULL)
-        wrap_words(out, first, rest, words->bytes);
-    out->failed = out->failed || words->failed;
-    text_finish(words);
-}
-
-void text_chance_line(struct text *out, double chance, const struct text *words)
-{
-    struct text percent = {0}, first = {0};
-    say_chance(chance, &percent);
-    if (!percent.failed)
-        cell_right(&first, percent.bytes, 6);
-    text_add(&first, "  ");
-    if (percent.failed || first.failed || words->failed)
-        out->failed = true;
-    else if (words->bytes != NULL)
-        wrap_words(out, first.bytes, "        ", words->bytes);
-    text_finish(&percent);
-    text_finish(&first);
+    for (size_t i = 0; i < diagnosis->n_suspects; i++)
+        if (diagnosis->suspects[i].reading == reading)
+            return true;
+    return false;
 }
 
 /* --- nothing explains the readings --- */
 
-void text_misfit(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                 struct text *out)
+void say_misfit(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
     if (!diagnosis->misfit.flag)
         return;
     struct text words = {0};
@@ -59,8 +92,7 @@ void text_misfit(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
              " read so far off. Two defects, another wiring than recorded, or readings that "
              "went wrong may be behind it. Read again before you take anything off; the "
              "chances below are worth little.");
-    text_heading(out, "NOTHING COMPARED EXPLAINS THESE READINGS");
-    paragraph(out, "", "", &words);
+    add_plain(said, &words);
 }
 
 /* --- danger --- */
@@ -72,10 +104,8 @@ static int by_chance(const void *one, const void *other)
     return (a < b) - (a > b);
 }
 
-void text_danger(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                 struct text *out)
+void say_dangers(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
     struct danger_chance dangers[N_DANGERS];
     size_t n = 0;
     for (size_t i = 0; i < N_DANGERS; i++)
@@ -83,15 +113,11 @@ void text_danger(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
             dangers[n] = diagnosis->dangers[i];
             dangers[n++].danger = (enum danger)i;
         }
-    if (n == 0)
-        return;
     qsort(dangers, n, sizeof dangers[0], by_chance);
-    text_heading(out, "DANGER IF RE-ENERGISED");
     for (size_t i = 0; i < n; i++) {
         struct text words = {0};
         text_add(&words, danger_words[dangers[i].danger]);
-        text_chance_line(out, dangers[i].chance, &words);
-        text_finish(&words);
+        add_chance(said, dangers[i].chance, &words);
     }
 }
 
@@ -121,7 +147,7 @@ static bool shows_at_board_only(const struct rf_diagnosis *diagnosis, const stru
     return count.at_board > 0 && count.elsewhere == 0;
 }
 
-static size_t check_faces(const struct rf_diagnosis *diagnosis, struct text *lines)
+static void check_faces(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     size_t n = 0;
     for (size_t i = 0; i < diagnosis->n_places && n < CHECKS_MOST; i++) {
@@ -130,14 +156,12 @@ static size_t check_faces(const struct rf_diagnosis *diagnosis, struct text *lin
             continue;
         struct text words = {0};
         say_look(diagnosis->job, &place->look, &words);
-        text_chance_line(lines, place->chance, &words);
-        text_finish(&words);
+        add_chance(said, place->chance, &words);
         n++;
     }
-    return n;
 }
 
-static size_t check_board(const struct rf_diagnosis *diagnosis, struct text *lines)
+static void check_board(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     size_t n = 0;
     for (size_t i = 0; i < diagnosis->n_ranked && n < CHECKS_MOST; i++) {
@@ -146,14 +170,12 @@ static size_t check_board(const struct rf_diagnosis *diagnosis, struct text *lin
             continue;
         struct text words = {0};
         text_addf(&words, "at the board: %s?", ranked->words);
-        text_chance_line(lines, ranked->confidence, &words);
-        text_finish(&words);
+        add_chance(said, ranked->confidence, &words);
         n++;
     }
-    return n;
 }
 
-static size_t check_readings(const struct rf_diagnosis *diagnosis, struct text *lines)
+static void check_readings(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     size_t n = diagnosis->n_ranked > 0 ? diagnosis->n_suspects : 0;
     for (size_t i = 0; i < n && i < SUSPECTS_MOST; i++) {
@@ -169,35 +191,25 @@ static size_t check_readings(const struct rf_diagnosis *diagnosis, struct text *
         text_add(&words, " read, ");
         say_ohms_unit(diagnosis->ranked[0].fitted[at], &words);
         text_add(&words, " would fit");
-        paragraph(lines, "        ", "        ", &words);
+        said_add(said, LINE_UNDER, 0, 0, &words);
     }
     if (n > SUSPECTS_MOST) {
         struct text words = {0};
         text_addf(&words, "and %zu more, marked * in the table below", n - SUSPECTS_MOST);
-        paragraph(lines, "        ", "        ", &words);
+        said_add(said, LINE_UNDER, 0, 0, &words);
     }
-    return n;
 }
 
-void text_checks(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                 struct text *out)
+void say_checks(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
-    struct text lines = {0};
-    size_t n = check_faces(diagnosis, &lines);
-    n += check_board(diagnosis, &lines);
-    n += check_readings(diagnosis, &lines);
-    if (n > 0 && !lines.failed) {
-        text_heading(out, "FIRST, WITHOUT A SCREW");
-        text_add(out, lines.bytes);
-    }
-    out->failed = out->failed || lines.failed;
-    text_finish(&lines);
+    check_faces(diagnosis, said);
+    check_board(diagnosis, said);
+    check_readings(diagnosis, said);
 }
 
 /* --- where --- */
 
-static void say_no_defect(const struct rf_diagnosis *diagnosis, struct text *out)
+static void say_no_defect(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     struct text words = {0};
     text_add(&words, "These readings show no defect (");
@@ -210,11 +222,11 @@ static void say_no_defect(const struct rf_diagnosis *diagnosis, struct text *out
         for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_INLINE; i++)
             text_addf(&words, "%s%s", i > 0 ? "; " : "", diagnosis->blind[i].words);
         if (diagnosis->n_blind > BLIND_INLINE)
-            text_addf(&words, "; and %zu more kinds of fault, below under BLIND SPOTS",
+            text_addf(&words, "; and %zu more kinds of fault, below under blind spots",
                       diagnosis->n_blind - BLIND_INLINE);
         text_add(&words, ".");
     }
-    paragraph(out, "", "", &words);
+    add_plain(said, &words);
 }
 
 /* Whether a check of some face is likelier to show it than that place. */
@@ -229,7 +241,7 @@ static bool face_before(const struct rf_diagnosis *diagnosis, const struct place
 
 /* "Take P4 off first: 71 %", in a line of its own. */
 static void say_first(const struct rf_diagnosis *diagnosis, const struct place_chance *place,
-                      struct text *out)
+                      struct said *said)
 {
     struct text words = {0};
     if (shows_no_defect(diagnosis))
@@ -243,10 +255,10 @@ static void say_first(const struct rf_diagnosis *diagnosis, const struct place_c
     text_add(&words, " first: ");
     say_chance(place->chance, &words);
     text_add(&words, ".");
-    paragraph(out, "", "", &words);
+    add_plain(said, &words);
 }
 
-static void say_places(const struct rf_diagnosis *diagnosis, struct text *out)
+static void say_places(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     size_t n = 0;
     for (size_t i = 0; i < diagnosis->n_places && n < PLACES_MOST; i++) {
@@ -254,30 +266,20 @@ static void say_places(const struct rf_diagnosis *diagnosis, struct text *out)
         if (place->look.kind != LOOK_OPEN || place->chance < place_said)
             continue;
         if (n++ == 0) {
-            say_first(diagnosis, place, out);
+            say_first(diagnosis, place, said);
             continue;
         }
         struct text words = {0};
         say_look(diagnosis->job, &place->look, &words);
-        text_chance_line(out, place->chance, &words);
-        text_finish(&words);
+        add_chance(said, place->chance, &words);
     }
 }
 
-void text_where(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                struct text *out)
+void say_where_first(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
-    struct text lines = {0};
     if (shows_no_defect(diagnosis))
-        say_no_defect(diagnosis, &lines);
-    say_places(diagnosis, &lines);
-    if (lines.length > 0 && !lines.failed) {
-        text_heading(out, "WHERE");
-        text_add(out, lines.bytes);
-    }
-    out->failed = out->failed || lines.failed;
-    text_finish(&lines);
+        say_no_defect(diagnosis, said);
+    say_places(diagnosis, said);
 }
 
 /* --- findings --- */
@@ -313,12 +315,9 @@ static void say_estimate(const struct estimate *estimate, struct text *out)
     text_add(out, ")");
 }
 
-void text_findings(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                   struct text *out)
+void say_findings(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
     double told = 0;
-    text_heading(out, "WHAT IT MAY BE");
     for (size_t i = 0; i < diagnosis->n_findings && i < FINDINGS_MOST; i++) {
         const struct finding *finding = &diagnosis->findings[i];
         if (i > 0 && finding->confidence < finding_said)
@@ -327,14 +326,51 @@ void text_findings(const struct rf_diagnosis *diagnosis, const struct rf_advice 
         text_add(&words, finding->words);
         if (one_family(diagnosis, finding))
             say_estimate(&diagnosis->ranked[finding->members[0]].estimates[0], &words);
-        text_chance_line(out, finding->confidence, &words);
-        text_finish(&words);
+        said_add(said, LINE_CHANCE, finding->confidence, i, &words);
         told += finding->confidence;
     }
     if (told < 1 - finding_said) {
         struct text words = {0};
         text_add(&words, "something else");
-        text_chance_line(out, 1 - told, &words);
-        text_finish(&words);
+        said_add(said, LINE_CHANCE, 1 - told, diagnosis->n_findings, &words);
     }
+}
+
+/* --- blind spots --- */
+
+void say_blind_spots(const struct rf_diagnosis *diagnosis, struct said *said)
+{
+    for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_MOST; i++)
+        add_plain_words(said, diagnosis->blind[i].words);
+    if (diagnosis->n_blind > BLIND_MOST) {
+        struct text words = {0};
+        text_addf(&words, "and %zu more kinds of fault", diagnosis->n_blind - BLIND_MOST);
+        add_plain(said, &words);
+    }
+}
+
+/* --- cautions, the ring --- */
+
+void say_cautions(const struct rf_diagnosis *diagnosis, struct said *said)
+{
+    static const char *const cautions[] = {
+        "Dead tests only. Isolate the whole board, lock it off, and prove dead at the conductors you "
+        "disconnect, neutrals too: an interconnection can be live from elsewhere.",
+        "Energise nothing while a CPC is off. Put no broken ring back on a 32 A device. Remove every "
+        "link; retest after the repair.",
+        "This guides where to look and certifies nothing. BS 7671 or the local code, and a competent, "
+        "licensed person, decide. Low insulation resistance, and faults that show only under load, "
+        "are outside this method.",
+    };
+    (void)diagnosis;
+    for (size_t i = 0; i < sizeof cautions / sizeof cautions[0]; i++)
+        add_plain_words(said, cautions[i]);
+}
+
+void say_ring(const struct rf_job *job, struct text *out)
+{
+    text_addf(out, "ring of %zu point%s", job->n_ring, job->n_ring == 1 ? "" : "s");
+    if (job->n_spurs > 0)
+        text_addf(out, " and %zu spur point%s", job->n_spurs, job->n_spurs == 1 ? "" : "s");
+    text_addf(out, ", %zu reading%s", job->n_readings, job->n_readings == 1 ? "" : "s");
 }

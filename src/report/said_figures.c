@@ -1,109 +1,10 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "report/text_parts.h"
+#include "report/said.h"
+
 #include "report/words.h"
-#include "report/wrap.h"
 
 #include <math.h>
 
-enum { PLACE_COLUMNS = 32, OHM_COLUMNS = 12, BLIND_MOST = 12 };
-
-/* --- blind spots --- */
-
-void text_blind(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                struct text *out)
-{
-    (void)advice;
-    if (diagnosis->n_blind == 0)
-        return;
-    text_heading(out, "BLIND SPOTS: THESE READINGS COULD NOT HAVE SHOWN");
-    for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_MOST; i++)
-        wrap_words(out, "- ", "  ", diagnosis->blind[i].words);
-    if (diagnosis->n_blind > BLIND_MOST)
-        text_addf(out, "- and %zu more kinds of fault\n", diagnosis->n_blind - BLIND_MOST);
-}
-
-/* --- readings --- */
-
-static void ohm_cell(struct text *out, double ohms)
-{
-    struct text words = {0};
-    say_ohms(ohms, &words);
-    cell_right(out, words.failed ? "" : words.bytes, OHM_COLUMNS);
-    out->failed = out->failed || words.failed;
-    text_finish(&words);
-}
-
-static bool is_suspect(const struct rf_diagnosis *diagnosis, size_t reading)
-{
-    for (size_t i = 0; i < diagnosis->n_suspects; i++)
-        if (diagnosis->suspects[i].reading == reading)
-            return true;
-    return false;
-}
-
-static void reading_row(const struct rf_diagnosis *diagnosis, size_t i, struct text *out)
-{
-    const struct reading *reading = &diagnosis->job->readings[i];
-    struct text place = {0};
-    text_add(&place, is_suspect(diagnosis, i) ? "* " : "  ");
-    say_spot(diagnosis->job, reading->spot, reading->place, &place);
-    if (reading->repeat > 0)
-        text_add(&place, ", again");
-    cell_left(out, place.failed ? "" : place.bytes, PLACE_COLUMNS);
-    ohm_cell(out, reading->open ? (double)NAN : reading->ohms);
-    ohm_cell(out, diagnosis->n_ranked > 0 ? diagnosis->ranked[0].fitted[i] : (double)NAN);
-    ohm_cell(out, diagnosis->sound[i]);
-    text_add(out, "\n");
-    out->failed = out->failed || place.failed;
-    text_finish(&place);
-}
-
-/* The heading of a set-up's rows; the first carries the columns' names. */
-static void set_up_row(size_t setup, bool first, struct text *out)
-{
-    struct text name = {0};
-    say_set_up(setup, &name);
-    if (!name.failed && first) {
-        cell_heading(out, name.bytes, PLACE_COLUMNS);
-        cell_right(out, "as read", OHM_COLUMNS);
-        cell_right(out, "fitted", OHM_COLUMNS);
-        cell_right(out, "no defect", OHM_COLUMNS);
-    } else if (!name.failed) {
-        text_add(out, name.bytes);
-    }
-    text_add(out, "\n");
-    out->failed = out->failed || name.failed;
-    text_finish(&name);
-}
-
-void text_readings(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                   struct text *out)
-{
-    const struct rf_job *job = diagnosis->job;
-    bool first = true;
-    (void)advice;
-    text_heading(out, "READINGS, Ω");
-    wrap_words(
-        out, "", "",
-        "As read; as the likeliest explanation has them; as a ring without defect would read "
-        "by the recorded lengths and cable.");
-    for (size_t setup = 0; setup < N_SETUPS; setup++) {
-        bool begun = false;
-        for (size_t i = 0; i < job->n_readings; i++) {
-            if (job->readings[i].setup != setup)
-                continue;
-            if (!begun)
-                set_up_row(setup, first, out);
-            begun = true;
-            first = false;
-            reading_row(diagnosis, i, out);
-        }
-    }
-    if (diagnosis->n_suspects > 0)
-        text_add(out, "* does not fit the likeliest explanation: read it again\n");
-}
-
-/* --- the schedule of test results --- */
 
 /* The mean of the finite readings of a spot; NAN where none is. *taken: whether there is any. */
 static double mean_reading(const struct rf_job *job, enum spot spot, bool *taken)
@@ -236,19 +137,16 @@ static void say_r1_r2(const struct rf_diagnosis *diagnosis, struct text *out)
     }
 }
 
-void text_figures(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
-                  struct text *out)
+void say_figures(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    (void)advice;
     struct text lines[3] = {{0}};
     say_resistances(diagnosis->job, &lines[0]);
     say_r1_r2(diagnosis, &lines[1]);
     say_lengths(diagnosis, &lines[2]);
-    text_heading(out, "FOR THE SCHEDULE OF TEST RESULTS");
     for (size_t i = 0; i < sizeof lines / sizeof lines[0]; i++) {
-        if (lines[i].bytes != NULL && !lines[i].failed)
-            wrap_words(out, "", "  ", lines[i].bytes);
-        out->failed = out->failed || lines[i].failed;
+        said->failed = said->failed || lines[i].failed;
+        if (lines[i].bytes != NULL)
+            said_add(said, LINE_PLAIN, 0, 0, &lines[i]);
         text_finish(&lines[i]);
     }
 }
