@@ -110,6 +110,12 @@ static void describe_kind_of(const struct fault *fault, struct text *out)
     fault->family->describe_kind(fault, out);
 }
 
+/* A place by its id alone; an end of the ring is the board. */
+static const char *short_name(const struct rf_job *job, size_t place)
+{
+    return place_is_end(job, place) ? "the board" : job->places[place].id;
+}
+
 /* Members of one kind, in words. */
 static void describe_members(const struct rf_diagnosis *diagnosis, const size_t members[], size_t n,
                              bool covered[], struct text *out)
@@ -121,8 +127,8 @@ static void describe_members(const struct rf_diagnosis *diagnosis, const size_t 
         if (from == place_out() && to == place_in(job))
             text_add(out, " somewhere on the ring");
         else
-            text_addf(out, " somewhere between %s and %s", job->places[from].id,
-                      job->places[to].id);
+            text_addf(out, " somewhere between %s and %s", short_name(job, from),
+                      short_name(job, to));
         return;
     }
     for (size_t i = 0; i < n && i < PLACES_NAMED; i++)
