@@ -111,6 +111,11 @@ extern const double confidence_shown;
 void hypothesis_words(const struct hypothesis *hypothesis, const struct rf_job *job,
                       struct text *out);
 
+/* Words for several of the ranked together, kind by kind ("neutral joint somewhere between P2 and
+ * P5; or …"), the likeliest first as they are given. False: memory is short. */
+bool describe_together(const struct rf_diagnosis *diagnosis, const size_t members[], size_t n,
+                       struct text *out);
+
 /* Words for a danger: "if re-energised, …". Never NULL for a danger there is. */
 extern const char *const danger_words[N_DANGERS];
 

@@ -143,20 +143,35 @@ struct scratch {
     bool *covered;        /* [ring place] */
 };
 
+static bool init_scratch(struct scratch *scratch, const struct rf_diagnosis *diagnosis)
+{
+    scratch->kind_members = NEW_ARRAY(size_t, diagnosis->n_ranked);
+    scratch->told = NEW_ARRAY(bool, diagnosis->n_ranked);
+    scratch->covered = NEW_ARRAY(bool, diagnosis->job->n_ring + 2);
+    return scratch->kind_members != NULL && scratch->told != NULL && scratch->covered != NULL;
+}
+
+static void finish_scratch(struct scratch *scratch)
+{
+    free(scratch->kind_members);
+    free(scratch->told);
+    free(scratch->covered);
+}
+
 /* Kind by kind, the likeliest first. */
-static void describe_finding(const struct rf_diagnosis *diagnosis, const struct finding *finding,
-                             struct scratch *scratch, struct text *out)
+static void describe_members_by_kind(const struct rf_diagnosis *diagnosis, const size_t members[],
+                                     size_t n_members, struct scratch *scratch, struct text *out)
 {
     size_t kinds = 0, left_out = 0;
-    memset(scratch->told, 0, finding->n_members * sizeof *scratch->told);
-    for (size_t i = 0; i < finding->n_members; i++) {
-        const struct hypothesis *leader = &diagnosis->ranked[finding->members[i]].hypothesis;
+    memset(scratch->told, 0, n_members * sizeof *scratch->told);
+    for (size_t i = 0; i < n_members; i++) {
+        const struct hypothesis *leader = &diagnosis->ranked[members[i]].hypothesis;
         size_t n = 0;
         if (scratch->told[i])
             continue;
-        for (size_t j = i; j < finding->n_members; j++)
-            if (same_kind(leader, &diagnosis->ranked[finding->members[j]].hypothesis)) {
-                scratch->kind_members[n++] = finding->members[j];
+        for (size_t j = i; j < n_members; j++)
+            if (same_kind(leader, &diagnosis->ranked[members[j]].hypothesis)) {
+                scratch->kind_members[n++] = members[j];
                 scratch->told[j] = true;
             }
         if (kinds++ < KINDS_NAMED) {
@@ -170,13 +185,24 @@ static void describe_finding(const struct rf_diagnosis *diagnosis, const struct 
         text_addf(out, "; or %zu other possibilities", left_out);
 }
 
+bool describe_together(const struct rf_diagnosis *diagnosis, const size_t members[], size_t n,
+                       struct text *out)
+{
+    struct scratch scratch = {0};
+    bool ok = init_scratch(&scratch, diagnosis);
+    if (ok)
+        describe_members_by_kind(diagnosis, members, n, &scratch, out);
+    finish_scratch(&scratch);
+    return ok;
+}
+
 static bool write_words(const struct rf_diagnosis *diagnosis, struct finding *finding, bool slight,
                         struct scratch *scratch)
 {
     struct text words = {0};
     if (slight)
         text_add(&words, "a fault too slight to show in these readings (");
-    describe_finding(diagnosis, finding, scratch, &words);
+    describe_members_by_kind(diagnosis, finding->members, finding->n_members, scratch, &words);
     if (slight)
         text_add(&words, ")");
     finding->words = words.bytes;
@@ -228,14 +254,10 @@ enum rf_status group_findings(struct rf_diagnosis *diagnosis, struct rf_error *e
 {
     size_t n = diagnosis->n_ranked;
     bool *slight = NEW_ARRAY(bool, n), *taken = NEW_ARRAY(bool, n);
-    struct scratch scratch = {
-        .kind_members = NEW_ARRAY(size_t, n),
-        .told = NEW_ARRAY(bool, n),
-        .covered = NEW_ARRAY(bool, diagnosis->job->n_ring + 2),
-    };
+    struct scratch scratch = {0};
     diagnosis->findings = NEW_ARRAY(struct finding, n);
-    bool ok = slight != NULL && taken != NULL && scratch.kind_members != NULL &&
-              scratch.told != NULL && scratch.covered != NULL && diagnosis->findings != NULL;
+    bool ok = init_scratch(&scratch, diagnosis) && slight != NULL && taken != NULL &&
+              diagnosis->findings != NULL;
     const struct ranked *none = find_none(diagnosis);
     for (size_t i = 0; ok && none != NULL && i < n; i++)
         slight[i] = !is_none(&diagnosis->ranked[i]) &&
@@ -248,8 +270,6 @@ enum rf_status group_findings(struct rf_diagnosis *diagnosis, struct rf_error *e
               by_confidence);
     free(slight);
     free(taken);
-    free(scratch.kind_members);
-    free(scratch.told);
-    free(scratch.covered);
+    finish_scratch(&scratch);
     return ok ? RF_OK : fail_memory(error);
 }

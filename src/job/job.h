@@ -13,7 +13,7 @@
  *
  *   run r leads to place r+1: from place r on the ring (r ≤ n), from the spur point's `from` else.
  *
- * Read-only once read; the readers in this room and `job_edit.h` are the only writers.
+ * Read-only once read; the readers in this room and `job_progress.h` are the only writers.
  */
 
 #include "job/setup.h"

@@ -71,32 +71,3 @@ void say_chance(double chance, struct text *out)
     else
         text_addf(out, "%.0f" NO_BREAK "%%", 100 * chance);
 }
-
-void say_look(const struct rf_job *job, const struct look *look, struct text *out)
-{
-    switch (look->where) {
-    case LOOK_AT_BOARD:
-        text_add(out, "look in the board");
-        break;
-    case LOOK_IN_RUN:
-        text_add(out, "look along the cable ");
-        say_place(job, run_near_end(job, look->index), out);
-        text_add(out, " to ");
-        say_place(job, run_far_end(look->index), out);
-        break;
-    case LOOK_AT_PLACE:
-        if (look->kind == LOOK_CHECK) {
-            text_add(out, "see to the face of ");
-            say_place(job, look->index, out);
-            text_add(out, ": switched on, probes home, nothing plugged in");
-        } else if (job->places[look->index].kind == KIND_JUNCTION_BOX) {
-            text_add(out, "take the lid off the junction box ");
-            say_place(job, look->index, out);
-        } else {
-            text_add(out, "take ");
-            say_place(job, look->index, out);
-            text_add(out, " off");
-        }
-        break;
-    }
-}

@@ -4,6 +4,7 @@
 
 /* What reports say in the same way everywhere. */
 
+#include "advice/words.h"
 #include "faults/fault.h"
 
 /* A space that ends no line; wrap.h writes it as a plain one. */
@@ -18,9 +19,5 @@ void say_ohms(double ohms, struct text *out);
 void say_ohms_unit(double ohms, struct text *out);
 /* "71 %", "<1 %", ">99 %" */
 void say_chance(double chance, struct text *out);
-
-/* "take P4 (landing) off", "open the junction box P5", "look in the board", "see to the face of
- * P4: …", "look along the cable P3 to P4". */
-void say_look(const struct rf_job *job, const struct look *look, struct text *out);
 
 #endif

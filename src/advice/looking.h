@@ -1,0 +1,65 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef ADVICE_LOOKING_H
+#define ADVICE_LOOKING_H
+
+/*
+ * The order of looking. Places are taken by chance per minute, which is optimal for independent
+ * shares (Kadane and Simon, "Optimal strategies for a class of constrained sequential problems",
+ * Ann. Statist. 5, 1977), ranked anew after each look because one look can rule out what would
+ * have shown elsewhere too. It ends when what is left of all defects is under the models'
+ * `stop_share` of itself and "no defect" together.
+ */
+
+#include "advice/advice.h"
+
+/* A place one can look at. */
+struct location {
+    struct look look;
+    double minutes;
+    size_t reach; /* index into reach_minutes; its minutes are added once */
+};
+
+/* One way a hypothesis shows at a location. */
+struct showing {
+    size_t hypothesis, part, location;
+    double share;
+    bool each_enough;
+};
+
+/* What there is to look at for a diagnosis' ranked hypotheses (the first n of them). */
+struct looking {
+    size_t n_hypotheses;
+    size_t n_locations;
+    struct location *locations;
+    size_t n_showings;
+    struct showing *showings;
+    bool *defect;            /* [hypothesis] something is wrong, somewhere */
+    double *reach_minutes;   /* [place], the board at the end */
+    size_t n_reach;
+    double stop_share;
+    /* workspace */
+    double *left;   /* [hypothesis · FAULTS_AT_ONCE + part] share of the part not ruled out */
+    double *chance; /* [location] */
+    bool *looked;   /* [location] */
+    bool *reached;  /* [place] */
+};
+
+/* Minutes of looking there, without reaching it. */
+double minutes_of_look(const struct rf_job *job, const struct effort_model *effort,
+                       const struct look *look);
+/* Minutes of reaching a place (the board: n_places). */
+double minutes_to_reach(const struct rf_job *job, size_t place);
+
+enum rf_status looking_init(struct looking *looking, const struct rf_diagnosis *diagnosis, size_t n,
+                            struct rf_error *error);
+void looking_finish(struct looking *looking); /* takes zeroed */
+
+/*
+ * Expected minutes of looking, for weights (n_hypotheses, ≥ 0, any sum; those that have nothing
+ * wrong among them) per unit of weight: Σ cost of a look × chance that it comes to it. `steps` (may
+ * be NULL) gets up to `most` looks in order and *n_steps their number. Allocates nothing.
+ */
+double looking_expected(struct looking *looking, const double weights[], struct look_step steps[],
+                        size_t most, size_t *n_steps);
+
+#endif
