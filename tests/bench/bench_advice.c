@@ -192,7 +192,26 @@ static void count_first(const struct rf_advice *advice)
         first_open++;
 }
 
-static void play(struct game *game, bool measure)
+/* Looking only: one diagnosis serves as long as its order of looking lasts, which takes every look
+ * in vain into account already. */
+static void play_looking(struct game *game)
+{
+    for (int act = 0; !game->found && act < MOST_ACTS; act++) {
+        struct rf_diagnosis *diagnosis = NULL;
+        struct rf_advice *advice = NULL;
+        struct rf_error error;
+        if (rf_diagnose(game->job, game->models, &diagnosis, &error) != RF_OK ||
+            rf_advise(diagnosis, &advice, &error) != RF_OK)
+            die(&error);
+        size_t looks = advice->n_steps > 0 ? advice->n_steps : 1;
+        for (size_t i = 0; i < looks && !game->found; i++)
+            look_in_order(game, advice);
+        rf_advice_destroy(advice);
+        rf_diagnosis_destroy(diagnosis);
+    }
+}
+
+static void play_planner(struct game *game)
 {
     for (int act = 0; !game->found && act < MOST_ACTS; act++) {
         struct rf_diagnosis *diagnosis = NULL;
@@ -204,12 +223,12 @@ static void play(struct game *game, bool measure)
         double middle = now();
         if (rf_advise(diagnosis, &advice, &error) != RF_OK)
             die(&error);
-        if (act == 0 && measure) {
+        if (act == 0) {
             diagnosis_seconds += middle - start;
             advice_seconds += now() - middle;
             count_first(advice);
         }
-        if (getenv("RINGFETTLE_SHOW") != NULL && measure) {
+        if (getenv("RINGFETTLE_SHOW") != NULL) {
             struct text t = {0};
             hypothesis_words(&game->truth->hypothesis, game->job, &t);
             printf("%s | top %s %.2f | %s | now %.1f measure %.1f\n", t.bytes,
@@ -218,7 +237,7 @@ static void play(struct game *game, bool measure)
                    advice->measure_first);
             text_finish(&t);
         }
-        if (measure && advice->n_plans > 0 && advice->plans[0].action == ACTION_READ)
+        if (advice->n_plans > 0 && advice->plans[0].action == ACTION_READ)
             take_reading(game, &advice->plans[0]);
         else
             look_in_order(game, advice);
@@ -249,7 +268,12 @@ static void play_both(const struct truth *truth, const struct rf_models *models,
         game->truth = truth;
         game->models = models;
         game->job = copy_job(truth);
-        play(game, measure);
+        if (measure)
+            play_planner(game);
+        else
+            play_looking(game);
+        if (measure && getenv("RINGFETTLE_SHOW") != NULL)
+            printf("== before the find %.1f\n", game->before_find);
         add(measure ? &planner_all : &looking_all, game->minutes, game->before_find);
         if (on_ring)
             add(measure ? &planner_ring : &looking_ring, game->minutes, game->before_find);
