@@ -71,7 +71,8 @@ struct truth {
 /*
  * Simulates. The readings of `ring` say what is measured, and how often; their values are not
  * used. `found` and `job` of the document are replaced. On RF_OK *truth is the caller's, to
- * destroy. RF_REFUSED for a fault that cannot have the value given, RF_NUMERICAL, RF_MEMORY.
+ * destroy. RF_USAGE for more than two defects, RF_REFUSED for a fault that cannot have the value
+ * given, RF_NUMERICAL, RF_MEMORY.
  */
 enum rf_status simulate(const struct rf_job *ring, const struct rf_models *models,
                         const struct simulation *simulation, struct truth **truth,
