@@ -85,6 +85,6 @@ enum rf_status read_one_job(const char *path, struct rf_job **job, struct rf_err
 
 extern const struct command command_check, command_diagnose, command_expect, command_simulate,
     command_answer;
-extern const struct command command_record, command_convert, command_new;
+extern const struct command command_record, command_convert, command_new, command_review;
 
 #endif

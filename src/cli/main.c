@@ -16,6 +16,7 @@
 static const struct command *const commands[] = {
     &command_diagnose, &command_check, &command_expect, &command_simulate, &command_answer,
     &command_record,   &command_convert, &command_new,
+    &command_review,
 };
 
 enum {

@@ -22,6 +22,7 @@
 
 #include <stdbool.h>
 #include <stddef.h>
+#include <stdint.h>
 
 struct cJSON;
 
@@ -115,5 +116,8 @@ const char *reading_key(const struct rf_job *job, const struct reading *reading)
  * "P1, kitchen and P3", "P1 to P8, and the spurs S1 and S2". Long lists are shortened. */
 struct text;
 void job_list_places(const struct rf_job *job, bool ring_only, struct text *out);
+
+/* Bytes of its file that a reader has gone through, the line read ahead with them. */
+uint64_t job_reader_bytes(const struct rf_job_reader *reader);
 
 #endif

@@ -51,6 +51,7 @@ struct rf_job_reader {
     bool finished;
     struct line line, ahead;
     size_t lines_read;
+    uint64_t bytes; /* read from the file */
     size_t from, to; /* of the block, what is not used yet */
     char block[BLOCK];
 };
@@ -68,6 +69,7 @@ static enum rf_status fill(struct rf_job_reader *reader, struct rf_error *error)
     while (n < 0 && errno == EINTR);
     reader->from = 0;
     reader->to = n > 0 ? (size_t)n : 0;
+    reader->bytes += reader->to;
     if (n < 0)
         return fail(error, RF_IO, "%s: cannot be read: %s", reader->path, strerror(errno));
     return RF_OK;
@@ -154,6 +156,7 @@ static enum rf_status skip_byte_order_mark(struct rf_job_reader *reader, struct 
         got += (size_t)n;
     }
     reader->to = got;
+    reader->bytes += got;
     reader->from = got >= sizeof mark - 1 && memcmp(reader->block, mark, sizeof mark - 1) == 0
                        ? sizeof mark - 1
                        : 0;
@@ -346,6 +349,11 @@ enum rf_status rf_job_reader_next(struct rf_job_reader *reader, struct rf_job **
     if (status != RF_MEMORY)
         reader->finished = true;
     return status;
+}
+
+uint64_t job_reader_bytes(const struct rf_job_reader *reader)
+{
+    return reader->bytes - (reader->to - reader->from);
 }
 
 void rf_job_reader_close(struct rf_job_reader *reader)
