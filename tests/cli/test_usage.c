@@ -4,7 +4,8 @@
 
 #define PROGRAM "\"$RINGFETTLE\" "
 
-static const char *const commands[] = {"diagnose", "check", "expect", "simulate", "answer"};
+static const char *const commands[] = {"diagnose", "check", "expect", "simulate", "answer",
+                                       "review"};
 enum { N_COMMANDS = sizeof commands / sizeof commands[0] };
 
 START_TEST(helps)
