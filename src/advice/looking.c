@@ -31,6 +31,10 @@ void looking_finish(struct looking *l)
 {
     free(l->locations);
     free(l->showings);
+    free(l->first_of_hypothesis);
+    free(l->showings_at);
+    free(l->first_at);
+    free(l->weight);
     free(l->defect);
     free(l->reach_minutes);
     free(l->left);
@@ -109,6 +113,8 @@ static void list_showings(struct looking *l, const struct rf_diagnosis *diagnosi
 {
     l->n_showings = 0;
     for (size_t h = 0; h < l->n_hypotheses; h++) {
+        if (!count_only)
+            l->first_of_hypothesis[h] = l->n_showings;
         const struct hypothesis *hypothesis = &diagnosis->ranked[h].hypothesis;
         for (size_t part = 0; part < hypothesis->n_faults; part++) {
             const struct fault *fault = &hypothesis->faults[part];
@@ -117,6 +123,20 @@ static void list_showings(struct looking *l, const struct rf_diagnosis *diagnosi
             fault_looks(fault, diagnosis->job, diagnosis->models, list_showing, &listing);
         }
     }
+    if (!count_only)
+        l->first_of_hypothesis[l->n_hypotheses] = l->n_showings;
+}
+
+static void index_by_location(struct looking *l)
+{
+    size_t n = 0;
+    for (size_t location = 0; location < l->n_locations; location++) {
+        l->first_at[location] = n;
+        for (size_t i = 0; i < l->n_showings; i++)
+            if (l->showings[i].location == location)
+                l->showings_at[n++] = i;
+    }
+    l->first_at[l->n_locations] = n;
 }
 
 /* The confidences already know of the places looked at; shares are made conditional on that, so
@@ -142,13 +162,18 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
     size_t most_locations = 2 * job->n_places + n_runs(job) + 1;
     l->locations = NEW_ARRAY(struct location, most_locations);
     l->showings = NEW_ARRAY(struct showing, l->n_showings);
+    l->first_of_hypothesis = NEW_ARRAY(size_t, n + 1);
+    l->showings_at = NEW_ARRAY(size_t, l->n_showings);
+    l->first_at = NEW_ARRAY(size_t, most_locations + 1);
+    l->weight = NEW_ARRAY(double, l->n_showings);
     l->defect = NEW_ARRAY(bool, n);
     l->reach_minutes = NEW_ARRAY(double, l->n_reach);
     l->left = NEW_ARRAY(double, n *FAULTS_AT_ONCE);
     l->chance = NEW_ARRAY(double, most_locations);
     l->looked = NEW_ARRAY(bool, most_locations);
     l->reached = NEW_ARRAY(bool, l->n_reach);
-    if (l->locations == NULL || l->showings == NULL || l->defect == NULL ||
+    if (l->locations == NULL || l->showings == NULL || l->first_of_hypothesis == NULL ||
+        l->showings_at == NULL || l->first_at == NULL || l->weight == NULL || l->defect == NULL ||
         l->reach_minutes == NULL || l->left == NULL || l->chance == NULL || l->looked == NULL ||
         l->reached == NULL) {
         looking_finish(l);
@@ -162,31 +187,31 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
         l->reach_minutes[place] = minutes_to_reach(job, place);
     list_showings(l, diagnosis, false);
     condition_shares(l);
+    index_by_location(l);
     return RF_OK;
 }
 
-/* What is left of a hypothesis' parts but one. */
-static double others_left(const struct looking *l, size_t hypothesis, size_t part)
+/* The weight of a hypothesis that would show by one of its showings, if one looked there now. */
+static double showing_weight(const struct looking *l, const struct showing *s, double weight)
 {
-    double product = 1.0;
-    for (size_t p = 0; p < FAULTS_AT_ONCE; p++)
-        if (p != part)
-            product *= l->left[hypothesis * FAULTS_AT_ONCE + p];
-    return product;
+    const double *left = &l->left[s->hypothesis * FAULTS_AT_ONCE];
+    if (l->looked[s->location])
+        return 0.0;
+    for (size_t part = 0; part < FAULTS_AT_ONCE; part++)
+        if (part != s->part)
+            weight *= left[part];
+    return weight * (s->each_enough || left[s->part] < s->share ? left[s->part] : s->share);
 }
 
-/* The weight that would show at each location if one looked there now. */
-static void count_chances(struct looking *l, const double weights[])
+/* Puts a hypothesis' showings, and the chances they are part of, in order with what is left. */
+static void update_hypothesis(struct looking *l, size_t hypothesis, double weight)
 {
-    memset(l->chance, 0, l->n_locations * sizeof *l->chance);
-    for (size_t i = 0; i < l->n_showings; i++) {
+    for (size_t i = l->first_of_hypothesis[hypothesis]; i < l->first_of_hypothesis[hypothesis + 1];
+         i++) {
         const struct showing *s = &l->showings[i];
-        double weight = weights[s->hypothesis];
-        if (weight <= 0.0 || l->looked[s->location])
-            continue;
-        double left = l->left[s->hypothesis * FAULTS_AT_ONCE + s->part];
-        l->chance[s->location] += weight * others_left(l, s->hypothesis, s->part) *
-                                  (s->each_enough ? left : fmin(s->share, left));
+        double now = showing_weight(l, s, weight);
+        l->chance[s->location] += now - l->weight[i];
+        l->weight[i] = now;
     }
 }
 
@@ -196,14 +221,18 @@ static double cost_of(const struct looking *l, size_t location)
     return at->minutes + (l->reached[at->reach] ? 0.0 : l->reach_minutes[at->reach]);
 }
 
-static size_t best_location(const struct looking *l)
+/* By chance per minute; n_locations where nothing would show more than rounding. */
+static size_t best_location(const struct looking *l, double rounding)
 {
     size_t best = l->n_locations;
     double most = 0.0;
     for (size_t i = 0; i < l->n_locations; i++) {
+        if (l->looked[i] || l->chance[i] <= rounding)
+            continue;
+        double cost = cost_of(l, i);
         /* A look that costs nothing comes first. */
-        double rate = l->chance[i] / fmax(cost_of(l, i), 1e-9);
-        if (l->chance[i] > 0.0 && rate > most) {
+        double rate = l->chance[i] / (cost > 1e-9 ? cost : 1e-9);
+        if (rate > most) {
             most = rate;
             best = i;
         }
@@ -211,17 +240,31 @@ static size_t best_location(const struct looking *l)
     return best;
 }
 
-static void rule_out(struct looking *l, size_t location)
+static void rule_out(struct looking *l, size_t location, const double weights[])
 {
     l->looked[location] = true;
     l->reached[l->locations[location].reach] = true;
-    for (size_t i = 0; i < l->n_showings; i++) {
-        const struct showing *s = &l->showings[i];
-        if (s->location != location)
-            continue;
+    for (size_t k = l->first_at[location]; k < l->first_at[location + 1]; k++) {
+        const struct showing *s = &l->showings[l->showings_at[k]];
         double *left = &l->left[s->hypothesis * FAULTS_AT_ONCE + s->part];
-        *left = s->each_enough ? 0.0 : fmax(0.0, *left - s->share);
+        if (weights[s->hypothesis] <= 0.0)
+            continue;
+        *left = s->each_enough || *left < s->share ? 0.0 : *left - s->share;
+        update_hypothesis(l, s->hypothesis, weights[s->hypothesis]);
     }
+}
+
+static void start_anew(struct looking *l, const double weights[])
+{
+    for (size_t i = 0; i < l->n_hypotheses * FAULTS_AT_ONCE; i++)
+        l->left[i] = 1.0;
+    memset(l->looked, 0, l->n_locations * sizeof *l->looked);
+    memset(l->reached, 0, l->n_reach * sizeof *l->reached);
+    memset(l->chance, 0, l->n_locations * sizeof *l->chance);
+    memset(l->weight, 0, l->n_showings * sizeof *l->weight);
+    for (size_t h = 0; h < l->n_hypotheses; h++)
+        if (weights[h] > 0.0)
+            update_hypothesis(l, h, weights[h]);
 }
 
 double looking_expected(struct looking *l, const double weights[], struct look_step steps[],
@@ -232,25 +275,21 @@ double looking_expected(struct looking *l, const double weights[], struct look_s
     for (size_t h = 0; h < l->n_hypotheses; h++)
         *(l->defect[h] ? &defects : &none) += weights[h];
     double total = defects + none;
-    for (size_t i = 0; i < l->n_hypotheses * FAULTS_AT_ONCE; i++)
-        l->left[i] = 1.0;
-    memset(l->looked, 0, l->n_locations * sizeof *l->looked);
-    memset(l->reached, 0, l->n_reach * sizeof *l->reached);
+    start_anew(l, weights);
     while (defects > 0.0 && defects >= l->stop_share * (defects + none)) {
-        count_chances(l, weights);
-        size_t location = best_location(l);
+        size_t location = best_location(l, 1e-12 * total);
         if (location == l->n_locations)
             break;
-        double cost = cost_of(l, location);
+        double cost = cost_of(l, location), chance = l->chance[location];
         expected += cost * (defects + none) / total;
         if (steps != NULL && n < most)
             steps[n] = (struct look_step){.look = l->locations[location].look,
-                                          .chance = l->chance[location] / total,
+                                          .chance = chance / total,
                                           .minutes = cost,
                                           .expected = expected};
         n++;
-        defects -= l->chance[location];
-        rule_out(l, location);
+        defects -= chance;
+        rule_out(l, location, weights);
     }
     if (n_steps != NULL)
         *n_steps = n < most ? n : most;

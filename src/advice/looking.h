@@ -32,14 +32,18 @@ struct looking {
     size_t n_locations;
     struct location *locations;
     size_t n_showings;
-    struct showing *showings;
+    struct showing *showings;     /* a hypothesis' own stand together: */
+    size_t *first_of_hypothesis;  /* [n_hypotheses + 1] */
+    size_t *showings_at;          /* indices of showings, those at a location together: */
+    size_t *first_at;             /* [n_locations + 1] */
     bool *defect;            /* [hypothesis] something is wrong, somewhere */
     double *reach_minutes;   /* [place], the board at the end */
     size_t n_reach;
     double stop_share;
     /* workspace */
     double *left;   /* [hypothesis · FAULTS_AT_ONCE + part] share of the part not ruled out */
-    double *chance; /* [location] */
+    double *weight; /* [showing] what would show if one looked there now */
+    double *chance; /* [location] the sum of that */
     bool *looked;   /* [location] */
     bool *reached;  /* [place] */
 };

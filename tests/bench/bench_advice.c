@@ -13,7 +13,7 @@
  * Counted: minutes to the find, and minutes before the look that finds it, which no plan can save.
  * Usage: bench_advice [jobs [seed]].
  */
-#include "advice/advice.h"
+#include "advice/looking.h"
 #include "job/job_progress.h"
 #include "simulation/simulation.h"
 
@@ -145,14 +145,44 @@ static void look_anywhere(struct game *game)
     game->before_find = game->minutes;
 }
 
+static bool look_first_new(struct game *game, const struct look_step steps[], size_t n)
+{
+    for (size_t i = 0; i < n; i++)
+        if (!has_looked(game, &steps[i].look)) {
+            take_look(game, &steps[i].look, steps[i].minutes);
+            return true;
+        }
+    return false;
+}
+
+/* The advice has stopped, but there is a defect: on in the same order, without its limit. */
+static bool look_on(struct game *game, const struct rf_diagnosis *diagnosis)
+{
+    struct looking looking;
+    struct rf_error error;
+    size_t n = 0;
+    double *weights = calloc(diagnosis->n_ranked, sizeof *weights);
+    if (weights == NULL || looking_init(&looking, diagnosis, diagnosis->n_ranked, &error) != RF_OK)
+        exit(1);
+    looking.stop_share = 0.0;
+    for (size_t i = 0; i < diagnosis->n_ranked; i++)
+        weights[i] = diagnosis->ranked[i].confidence;
+    struct look_step *steps = calloc(looking.n_locations + 1, sizeof *steps);
+    if (steps == NULL)
+        exit(1);
+    looking_expected(&looking, weights, steps, looking.n_locations, &n);
+    bool looked = look_first_new(game, steps, n);
+    free(steps);
+    free(weights);
+    looking_finish(&looking);
+    return looked;
+}
+
 static void look_in_order(struct game *game, const struct rf_advice *advice)
 {
-    for (size_t i = 0; i < advice->n_steps; i++)
-        if (!has_looked(game, &advice->steps[i].look)) {
-            take_look(game, &advice->steps[i].look, advice->steps[i].minutes);
-            return;
-        }
-    look_anywhere(game);
+    if (!look_first_new(game, advice->steps, advice->n_steps) &&
+        !look_on(game, advice->diagnosis))
+        look_anywhere(game);
 }
 
 static void take_reading(struct game *game, const struct plan *plan)
