@@ -216,7 +216,7 @@ enum rf_status rf_advise(const struct rf_diagnosis *diagnosis, struct rf_advice 
         status = planning.measuring == NULL ? fail_memory(error) : choose_plans(&planning, error);
     }
     if (status == RF_OK)
-        status = seek_lifts(advice, error);
+        status = seek_lifts(advice, &planning.predictive, error);
     finish_planning(&planning);
     if (status == RF_OK)
         *result = advice;

@@ -1,9 +1,196 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "advice/steps.h"
+#include "advice/words.h"
 
-enum rf_status seek_lifts(struct rf_advice *advice, struct rf_error *error)
+#include "base/error.h"
+#include "base/memory.h"
+
+#include <math.h>
+#include <string.h>
+
+/*
+ * Which reading would lift a blind spot: put some members of the kind, at their median, into the
+ * ring without other fault, and see at which readings not yet taken they would show. The reading
+ * that shows most of them a minute is it.
+ */
+
+enum { MEMBERS_TRIED = 4 };
+
+/* A member shows where the reading moves by this many of its σ, or a path is lost or made. */
+static const double shows = 3.0;
+
+struct seeker {
+    const struct rf_diagnosis *diagnosis;
+    const struct predictive *predictive;
+    struct forward *forward;
+    struct wiring wiring;
+    double *theta; /* the ring's, of the best fit; faults at their median */
+    double *sound; /* [candidate] Ω without fault; NAN: over range */
+    double *shown; /* [candidate] members that would show there */
+};
+
+static void finish_seeker(struct seeker *s)
 {
-    (void)advice;
-    (void)error;
+    forward_destroy(s->forward);
+    wiring_finish(&s->wiring);
+    free(s->theta);
+    free(s->sound);
+    free(s->shown);
+}
+
+static enum rf_status evaluate(struct seeker *s)
+{
+    enum rf_status status = forward_analyse(s->forward, &s->wiring);
+    return status == RF_OK ? forward_evaluate(s->forward, s->theta) : status;
+}
+
+static double mean_or_nan(const struct seeker *s, size_t candidate)
+{
+    return forward_reachable(s->forward, candidate) ? forward_mean(s->forward, candidate) : NAN;
+}
+
+static enum rf_status init_seeker(struct seeker *s, struct rf_error *error)
+{
+    const struct rf_diagnosis *d = s->diagnosis;
+    size_t common = (size_t)d->ring.map.n_common, n = s->predictive->n;
+    s->theta = NEW_ARRAY(double, common + FAULTS_AT_ONCE);
+    s->sound = NEW_ARRAY(double, n);
+    s->shown = NEW_ARRAY(double, n);
+    s->forward = forward_create(&d->ring, s->predictive->candidates, n);
+    if (s->theta == NULL || s->sound == NULL || s->shown == NULL || s->forward == NULL)
+        return fail_memory(error);
+    memcpy(s->theta, d->ranked[0].theta, common * sizeof *s->theta);
+    enum rf_status status = wiring_init(&s->wiring, d->job, d->models, error);
+    if (status == RF_OK && (status = evaluate(s)) != RF_OK)
+        fail(error, status, "%s: the recorded ring's readings cannot be computed", d->job->source);
+    for (size_t c = 0; c < n && status == RF_OK; c++)
+        s->sound[c] = mean_or_nan(s, c);
+    return status;
+}
+
+static enum rf_status try_member(struct seeker *s, const struct fault *fault, struct rf_error *error)
+{
+    struct hypothesis hypothesis = {.faults = {*fault}, .n_faults = 1};
+    wiring_copy(&s->wiring, &s->diagnosis->ring);
+    hypothesis_apply(&hypothesis, &s->wiring, NULL);
+    enum rf_status status = evaluate(s);
+    if (status != RF_OK)
+        return fail(error, status, "%s: readings to come cannot be computed",
+                    s->diagnosis->job->source);
+    const struct instrument_model *in = &s->diagnosis->models->instrument;
+    for (size_t c = 0; c < s->predictive->n; c++) {
+        double mean = mean_or_nan(s, c), sound = s->sound[c];
+        /* The likeliest hypothesis' uncertainty stands for the ring's. */
+        double sigma = fmax(s->predictive->sigma[c], instrument_sigma(in, fmax(sound, 0.0)));
+        if (isnan(mean) != isnan(sound) || fabs(mean - sound) > shows * sigma)
+            s->shown[c] += 1.0;
+    }
     return RF_OK;
+}
+
+struct members {
+    const struct fault *example;
+    size_t n, wanted, step;
+    struct fault tried[MEMBERS_TRIED];
+    size_t n_tried;
+};
+
+static bool count_member(void *context, const struct fault *fault)
+{
+    struct members *members = context;
+    members->n += fault_same_kind(members->example, fault);
+    return true;
+}
+
+static bool take_member(void *context, const struct fault *fault)
+{
+    struct members *members = context;
+    if (!fault_same_kind(members->example, fault))
+        return true;
+    if (members->n++ == members->wanted && members->n_tried < MEMBERS_TRIED) {
+        members->tried[members->n_tried++] = *fault;
+        members->wanted += members->step;
+    }
+    return true;
+}
+
+/* Members of the kind, spread evenly over their order. */
+static void sample_members(const struct rf_diagnosis *d, struct members *members)
+{
+    const struct fault_family *family = members->example->family;
+    family->enumerate(d->job, d->models, count_member, members);
+    members->step = (members->n + MEMBERS_TRIED - 1) / MEMBERS_TRIED;
+    members->n = 0;
+    family->enumerate(d->job, d->models, take_member, members);
+}
+
+static double minutes_of(const struct seeker *s, size_t candidate)
+{
+    const struct measurement *read = &s->predictive->candidates[candidate];
+    const struct rf_job *job = s->diagnosis->job;
+    double minutes = s->predictive->minutes[candidate];
+    if (read->setup != job->setup_in_place)
+        minutes += s->diagnosis->models->effort.change_of_setup;
+    if (read->spot == SPOT_POINT)
+        minutes += minutes_to_reach(job, read->place);
+    return minutes;
+}
+
+static bool write_lift(const struct seeker *s, struct lift *lift)
+{
+    struct text words = {0};
+    const struct rf_job *job = s->diagnosis->job;
+    if (lift->read.setup == job->setup_in_place)
+        text_add(&words, "with the links as they are, ");
+    else {
+        text_add(&words, "at the board ");
+        say_connection(lift->read.setup, &words);
+        text_add(&words, "; ");
+    }
+    say_meter(lift->read.setup, &words);
+    text_add(&words, " ");
+    say_where(job, &lift->read, &words);
+    lift->words = words.bytes;
+    return !words.failed && words.bytes != NULL;
+}
+
+static enum rf_status seek_one(struct rf_advice *advice, struct seeker *s, size_t blind,
+                               struct rf_error *error)
+{
+    struct members members = {.example = &s->diagnosis->blind[blind].example};
+    enum rf_status status = RF_OK;
+    sample_members(s->diagnosis, &members);
+    memset(s->shown, 0, s->predictive->n * sizeof *s->shown);
+    for (size_t i = 0; i < members.n_tried && status == RF_OK; i++)
+        status = try_member(s, &members.tried[i], error);
+    size_t best = s->predictive->n;
+    double most = 0.0;
+    for (size_t c = 0; c < s->predictive->n && status == RF_OK; c++)
+        if (s->shown[c] / minutes_of(s, c) > most) {
+            most = s->shown[c] / minutes_of(s, c);
+            best = c;
+        }
+    if (status != RF_OK || best == s->predictive->n)
+        return status;
+    struct lift *lift = &advice->lifts[advice->n_lifts++];
+    lift->blind = blind;
+    lift->read = s->predictive->candidates[best];
+    lift->minutes = minutes_of(s, best);
+    return write_lift(s, lift) ? RF_OK : fail_memory(error);
+}
+
+enum rf_status seek_lifts(struct rf_advice *advice, const struct predictive *predictive,
+                          struct rf_error *error)
+{
+    const struct rf_diagnosis *diagnosis = advice->diagnosis;
+    struct seeker seeker = {.diagnosis = diagnosis, .predictive = predictive};
+    if (diagnosis->n_blind == 0)
+        return RF_OK;
+    advice->lifts = NEW_ARRAY(struct lift, diagnosis->n_blind);
+    enum rf_status status =
+        advice->lifts == NULL ? fail_memory(error) : init_seeker(&seeker, error);
+    for (size_t i = 0; i < diagnosis->n_blind && status == RF_OK; i++)
+        status = seek_one(advice, &seeker, i, error);
+    finish_seeker(&seeker);
+    return status;
 }

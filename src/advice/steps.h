@@ -15,6 +15,7 @@ bool write_look_words(const struct rf_diagnosis *diagnosis, struct plan *plan);
 bool write_stop_words(struct rf_advice *advice);
 
 /* lifts.c: what would lift the blind spots. */
-enum rf_status seek_lifts(struct rf_advice *advice, struct rf_error *error);
+enum rf_status seek_lifts(struct rf_advice *advice, const struct predictive *predictive,
+                          struct rf_error *error);
 
 #endif

@@ -100,6 +100,9 @@ struct rf_diagnosis {
     double found_confidence; /* 0 where it was not compared */
 };
 
+/* Whether two faults differ in nothing but the place. */
+bool fault_same_kind(const struct fault *one, const struct fault *other);
+
 /* As rf_diagnose, with screening or (to check it) without. */
 enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models, bool screen,
                         struct rf_diagnosis **diagnosis, struct rf_error *error);

@@ -43,7 +43,4 @@ enum rf_status group_findings(struct rf_diagnosis *diagnosis, struct rf_error *e
 enum rf_status seek_blind_spots(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
                                 struct fitter *fitter, struct rf_error *error);
 
-/* Whether two faults differ in nothing but the place. */
-bool fault_same_kind(const struct fault *one, const struct fault *other);
-
 #endif
