@@ -77,7 +77,8 @@ static void say_reads(const struct rf_job *job, const struct plan *plan, struct 
         text_add(out, i == 0 ? " " : ", then ");
         say_where(job, &plan->reads[i], out);
     }
-    text_add(out, plan->n_reads > 1 ? ", as long as it is not settled. First reading:" : ".");
+    text_add(out, plan->n_reads > 1 ? ", as long as it is not settled. First reading:"
+                                    : ". The reading:");
 }
 
 bool write_read_words(const struct rf_diagnosis *diagnosis, struct plan *plan, size_t n,

@@ -1,12 +1,13 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "cli/command.h"
 
+#include "advice/advice.h"
 #include "diagnosis/diagnosis.h"
 #include "report/report.h"
 
 struct context {
     const struct rf_models *models;
-    bool json;
+    bool json, plan;
     size_t reported;
 };
 
@@ -14,20 +15,24 @@ static enum rf_status one_job(void *context, const struct rf_job *job, struct rf
 {
     struct context *in = context;
     struct rf_diagnosis *diagnosis = NULL;
-    enum rf_status status = rf_diagnose(job, in->models, &diagnosis, error);
-    if (status != RF_OK)
-        return status;
+    struct rf_advice *advice = NULL;
     struct text out = {0};
-    if (in->json) {
-        report_json(diagnosis, NULL, &out);
-    } else {
-        if (in->reported > 0)
-            report_divider(&out);
-        report_text(diagnosis, NULL, &out);
+    enum rf_status status = rf_diagnose(job, in->models, &diagnosis, error);
+    if (status == RF_OK && in->plan)
+        status = rf_advise(diagnosis, &advice, error);
+    if (status == RF_OK) {
+        if (in->json) {
+            report_json(diagnosis, advice, &out);
+        } else {
+            if (in->reported > 0)
+                report_divider(&out);
+            report_text(diagnosis, advice, &out);
+        }
+        in->reported++;
+        status = put(&out, error);
     }
-    in->reported++;
-    status = put(&out, error);
     text_finish(&out);
+    rf_advice_destroy(advice);
     rf_diagnosis_destroy(diagnosis);
     return status;
 }
@@ -41,6 +46,7 @@ static enum rf_class run(const struct invocation *invocation)
     struct context context = {
         .models = models,
         .json = option_value(invocation, "json") != NULL,
+        .plan = option_value(invocation, "no-plan") == NULL,
     };
     enum rf_class class = each_job(invocation, one_job, &context);
     rf_models_destroy(models);
@@ -54,14 +60,16 @@ const struct command command_diagnose = {
     .about =
         "Compares every plausible defect and testing mistake with the readings and reports what "
         "they show: what would be dangerous first, then what can be checked without a screw, "
-        "where to look, what the readings could not show, the readings beside what fits them, "
+        "where to look, what to do next, what the readings could not show, the readings beside "
+        "what fits them, "
         "and the figures for a schedule of test results.\n\n"
         "JOB is a file of one job, or of one job a line; - reads standard input. A job that is "
         "refused is named on standard error; the others are reported all the same.",
-    .n_options = 2,
+    .n_options = 3,
     .options =
         {
             {"json", NULL, "one JSON object a job, each on a line, instead of text"},
+            {"no-plan", NULL, "leave out what to do next: faster, for archives"},
             {"models", "DIR", "take the models from DIR instead of those compiled in"},
         },
     .least = 1,

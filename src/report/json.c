@@ -1,6 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "report/report.h"
 
+#include "advice/advice.h"
+
 #include <cjson/cJSON.h>
 #include <math.h>
 #include <stdio.h>
@@ -218,10 +220,53 @@ static void add_misfit(struct writer *writer, cJSON *root)
     add(writer, root, "misfit", object);
 }
 
+/* --- the plan --- */
+
+static const char *measurement_key(const struct rf_job *job, const struct measurement *read)
+{
+    return read->spot == SPOT_POINT ? job->places[read->place].id : spot_keys[read->spot];
+}
+
+static cJSON *plan_object(struct writer *writer, const struct plan *plan)
+{
+    cJSON *object = cJSON_CreateObject();
+    bool read = plan->action == ACTION_READ;
+    add_words(writer, object, "action", read ? "read" : "look");
+    if (read) {
+        add_words(writer, object, "setup", setups[plan->setup].name);
+        cJSON *places = add_list(writer, object, "places");
+        for (size_t i = 0; i < plan->n_reads; i++)
+            append(writer, places,
+                   cJSON_CreateString(measurement_key(writer->diagnosis->job, &plan->reads[i])));
+    } else {
+        add_look(writer, object, &plan->look);
+    }
+    add_number(writer, object, "minutes", plan->minutes);
+    if (read)
+        add_number(writer, object, "saves", plan->saves);
+    add_words(writer, object, "text", plan->words);
+    return object;
+}
+
+/* Nothing where nothing is worth doing. */
+static void add_next(struct writer *writer, cJSON *root, const struct rf_advice *advice)
+{
+    cJSON *list = add_list(writer, root, "next");
+    for (size_t i = 0; i < advice->n_plans && !advice->stop; i++)
+        append(writer, list, plan_object(writer, &advice->plans[i]));
+}
+
+static void add_minutes(struct writer *writer, cJSON *root, const struct rf_advice *advice)
+{
+    cJSON *object = cJSON_CreateObject();
+    add_number(writer, object, "look_now", advice->look_now);
+    add_number(writer, object, "measure_first", advice->measure_first);
+    add(writer, root, "expected_minutes", object);
+}
+
 void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
                  struct text *out)
 {
-    (void)advice;
     struct writer writer = {.diagnosis = diagnosis};
     cJSON *root = cJSON_CreateObject();
     add_words(&writer, root, "format", "ringfettle-diagnosis/1");
@@ -235,6 +280,10 @@ void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
     add_suspects(&writer, root);
     add_blind(&writer, root);
     add_readings(&writer, root);
+    if (advice != NULL) {
+        add_next(&writer, root, advice);
+        add_minutes(&writer, root, advice);
+    }
 
     char *line = writer.failed ? NULL : cJSON_PrintUnformatted(root);
     if (line != NULL)

@@ -5,6 +5,7 @@
 /* What a report says, section by section, whatever it is then written as: each function adds the
  * lines of one section, or none where it has nothing to say. */
 
+#include "advice/advice.h"
 #include "diagnosis/diagnosis.h"
 
 enum line_kind {
@@ -36,6 +37,8 @@ void say_dangers(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_checks(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_where_first(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_findings(const struct rf_diagnosis *diagnosis, struct said *said);
+/* The plan; `advice` NULL: nothing. */
+void say_next(const struct rf_advice *advice, struct said *said);
 void say_blind_spots(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_figures(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_cautions(const struct rf_diagnosis *diagnosis, struct said *said);
@@ -49,6 +52,7 @@ void say_ring(const struct rf_job *job, struct text *out);
 #define HEADING_CHECKS "First, without a screw"
 #define HEADING_WHERE "Where"
 #define HEADING_FINDINGS "What it may be"
+#define HEADING_NEXT "Next"
 #define HEADING_BLIND "Blind spots: these readings could not have shown"
 #define HEADING_READINGS "Readings, Ω"
 #define HEADING_FIGURES "For the schedule of test results"

@@ -66,12 +66,12 @@ struct lines_section {
 };
 
 /* What is needed at once stands first; no table stands before the plan. */
-static const struct lines_section before_tables[] = {
-    {HEADING_MISFIT, say_misfit, "", ""},
-    {HEADING_DANGER, say_dangers, "", ""},
-    {HEADING_CHECKS, say_checks, "", ""},
-    {HEADING_WHERE, say_where_first, "", ""},
+static const struct lines_section before_plan[] = {
+    {HEADING_MISFIT, say_misfit, "", ""},     {HEADING_DANGER, say_dangers, "", ""},
+    {HEADING_CHECKS, say_checks, "", ""},     {HEADING_WHERE, say_where_first, "", ""},
     {HEADING_FINDINGS, say_findings, "", ""},
+};
+static const struct lines_section behind_plan[] = {
     {HEADING_BLIND, say_blind_spots, "- ", "  "},
 };
 static const struct lines_section behind_tables[] = {
@@ -177,9 +177,12 @@ static void header(const struct rf_diagnosis *diagnosis, struct text *out)
 void report_text(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
                  struct text *out)
 {
-    (void)advice;
+    struct said next = {0};
     header(diagnosis, out);
-    say_sections(before_tables, sizeof before_tables / sizeof before_tables[0], diagnosis, out);
+    say_sections(before_plan, sizeof before_plan / sizeof before_plan[0], diagnosis, out);
+    say_next(advice, &next);
+    lines(HEADING_NEXT, "", "", &next, out);
+    say_sections(behind_plan, sizeof behind_plan / sizeof behind_plan[0], diagnosis, out);
     text_readings(diagnosis, out);
     say_sections(behind_tables, sizeof behind_tables / sizeof behind_tables[0], diagnosis, out);
 }

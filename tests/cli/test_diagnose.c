@@ -126,6 +126,8 @@ START_TEST(says_where_the_joint_is)
         "WHAT IT MAY BE",
         ">99 %  high-resistance neutral joint in the run P4",
         "(90 %: ",
+        "NEXT",
+        "Take P4 (worktop right of the hob) off.",
         "BLIND SPOTS",
         "READINGS",
         "as read      fitted   no defect",
@@ -271,6 +273,27 @@ static void expect_places(const cJSON *root)
     }
 }
 
+static void expect_plan(const cJSON *root)
+{
+    const cJSON *item = NULL;
+    cJSON_ArrayForEach(item, member(root, "next"))
+    {
+        ck_assert(number(item, "minutes") > 0);
+        string(item, "text");
+        if (strcmp(string(item, "action"), "read") == 0) {
+            string(item, "setup");
+            ck_assert(cJSON_GetArraySize(member(item, "places")) > 0);
+            ck_assert(cJSON_IsNumber(member(item, "saves")));
+        } else {
+            ck_assert_str_eq(string(item, "action"), "look");
+            string(item, "look");
+            ck_assert(cJSON_HasObjectItem(item, "place") != cJSON_HasObjectItem(item, "run"));
+        }
+    }
+    const cJSON *minutes = member(root, "expected_minutes");
+    ck_assert(number(minutes, "measure_first") <= number(minutes, "look_now") + 1e-9);
+}
+
 static void expect_diagnosis(const char *line)
 {
     const cJSON *item = NULL;
@@ -286,6 +309,7 @@ static void expect_diagnosis(const char *line)
     expect_faults(root);
     expect_findings(root);
     expect_places(root);
+    expect_plan(root);
     cJSON_ArrayForEach(item, member(root, "blind"))
     {
         string(item, "family");
@@ -326,6 +350,17 @@ START_TEST(writes_json_a_line_a_job)
 }
 END_TEST
 
+START_TEST(leaves_the_plan_out_when_asked)
+{
+    struct run left = run(PROGRAM "diagnose --json --no-plan " SCENARIOS "kitchen-neutral.json");
+    cJSON *root = cJSON_Parse(left.out);
+    ck_assert(root != NULL && !cJSON_HasObjectItem(root, "next") &&
+              !cJSON_HasObjectItem(root, "expected_minutes"));
+    cJSON_Delete(root);
+    run_finish(&left);
+}
+END_TEST
+
 START_TEST(json_says_what_the_readings_determine)
 {
     struct run left = run(PROGRAM "diagnose --json - <" SCENARIOS "kitchen-neutral.json");
@@ -360,6 +395,7 @@ int main(void)
     tcase_add_test(cases, says_first_that_nothing_explains_it);
     tcase_add_test(cases, checks_before_screws);
     tcase_add_test(cases, writes_json_a_line_a_job);
+    tcase_add_test(cases, leaves_the_plan_out_when_asked);
     tcase_add_test(cases, json_says_what_the_readings_determine);
     return run_suite(suite);
 }
