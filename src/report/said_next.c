@@ -51,7 +51,7 @@ void say_next(const struct rf_advice *advice, struct said *said)
     if (advice->n_plans == 0)
         return;
     if (shows_no_defect(advice->diagnosis))
-        text_add(&words, "To go on all the same: ");
+        text_add(&words, "To go on all the same. ");
     text_add(&words, advice->plans[0].words);
     add_plain(said, &words);
     say_cost(advice, said);
