@@ -244,7 +244,9 @@ static void say_first(const struct rf_diagnosis *diagnosis, const struct place_c
                       struct said *said)
 {
     struct text words = {0};
-    if (shows_no_defect(diagnosis))
+    if (diagnosis->misfit.flag)
+        text_add(&words, "If new readings say the same, ");
+    else if (shows_no_defect(diagnosis))
         text_add(&words, "If something is wrong all the same, ");
     else if (face_before(diagnosis, place))
         text_add(&words, "If the checks above show nothing, ");

@@ -120,7 +120,9 @@ static void say_r1_r2(const struct rf_diagnosis *diagnosis, struct text *out)
     const struct reading *highest = highest_r1_r2(job, &points);
     for (size_t place = 0; place < job->n_places; place++)
         fronts += place_has_front(job, place);
-    if (!shows_no_defect(diagnosis)) {
+    if (diagnosis->misfit.flag) {
+        text_add(out, "Highest R1+R2: not given while nothing explains the readings.");
+    } else if (!shows_no_defect(diagnosis)) {
         text_add(out, "Highest R1+R2: not given while a defect stands.");
     } else if (highest == NULL) {
         text_add(out, "Highest R1+R2: no crossed line-CPC reading at a point.");
