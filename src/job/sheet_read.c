@@ -762,6 +762,7 @@ static void assemble(struct building *building)
         cJSON_Delete(last);
     }
     hand_over(building, list, "ring", &building->ring);
+    need(building, &building->readings); /* that there is none in it is then the complaint */
     assemble_readings(building, n_named);
     hand_over(building, list, "readings", &building->readings);
     hand_over(building, list, "access", &building->access);
