@@ -137,7 +137,7 @@ static enum rf_status insert(struct text *json, size_t open, const char *key, co
     struct item last = find_item(bytes, open, NULL, SIZE_MAX);
     size_t at = open + 1;
     if (last.end > 0) {
-        bool close = bytes[last.key.to] == ':' && bytes[last.key.to + 1] == '"';
+        bool close = key != NULL && last.value.from == last.key.to + 1; /* "a":1 */
         at = last.value.to;
         text_add(&made, ",");
         if (last.gap.to > last.gap.from || last.index > 0)

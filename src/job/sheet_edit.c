@@ -197,7 +197,7 @@ static enum rf_status edit_reading(struct sheet_grid *grid, const struct job_cha
     const char *old = sheet_cell_text(grid->rows + row, column);
     if (change->how == CHANGE_ADD && !says_nothing(old))
         text_add(&cell, old);
-    for (size_t i = 0; i < change->n_values; i++) {
+    for (size_t i = 0; i < change->n_values && change->how != CHANGE_REMOVE; i++) {
         if (cell.length > 0)
             text_add(&cell, " ");
         add_value(grid, change->values[i], &cell);
