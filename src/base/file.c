@@ -241,27 +241,23 @@ enum rf_status file_replace(struct file_hold *hold, const struct text *bytes,
     return fsync(hold->folder) == 0 ? RF_OK : fail_system(hold->name, "be written", error);
 }
 
-/* The path of a file that may not be there yet, from its folder's. */
+/* The path of a file that may not be there yet, from its folder's; NULL, with errno. */
 static char *path_of_new(const char *path)
 {
-    struct text whole = {0};
     const char *slash = strrchr(path, '/');
-    char *folder = NULL;
-    if (slash == NULL) {
-        folder = realpath(".", NULL);
-    } else {
-        text_append(&whole, path, (size_t)(slash + 1 - path));
-        folder = whole.failed ? NULL : realpath(whole.bytes, NULL);
-    }
+    struct text whole = {0};
+    text_append(&whole, slash != NULL ? path : "./", slash != NULL ? (size_t)(slash + 1 - path) : 2);
+    char *folder = whole.failed ? NULL : realpath(whole.bytes, NULL);
+    int reason = whole.failed ? ENOMEM : errno;
     text_clear(&whole);
     if (folder != NULL)
         text_addf(&whole, "%s/%s", strcmp(folder, "/") == 0 ? "" : folder,
                   slash != NULL ? slash + 1 : path);
-    free(folder);
-    if (whole.failed) {
-        errno = ENOMEM;
+    if (folder == NULL || whole.failed) {
         text_finish(&whole);
+        errno = folder == NULL ? reason : ENOMEM;
     }
+    free(folder);
     return whole.bytes;
 }
 

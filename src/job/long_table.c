@@ -744,7 +744,8 @@ static enum rf_status begin_table(struct long_reader *reader, FILE *file, struct
 {
     static const char separators[] = {',', ';', '\t'};
     bool good = false;
-    char separator = reader->options->separator;
+    size_t most = 0;
+    char likeliest = ',', separator = reader->options->separator;
     enum rf_status status = read_head(file, reader->source, &reader->head, error);
     if (status == RF_OK && reader->head.length == 0)
         return fail(error, RF_SYNTAX, "%s: found nothing; needs a table", reader->source);
@@ -755,7 +756,13 @@ static enum rf_status begin_table(struct long_reader *reader, FILE *file, struct
         status = try_separator(reader, separators[i], &good, error);
         if (good)
             separator = separators[i];
+        if (reader->width > most) {
+            most = reader->width;
+            likeliest = separators[i];
+        }
     }
+    if (status == RF_OK && !good && separator == '\0') /* for the message */
+        status = try_separator(reader, likeliest, &good, error);
     if (status != RF_OK)
         return status;
     if (!good)
