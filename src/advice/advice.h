@@ -63,4 +63,9 @@ struct rf_advice {
     struct lift *lifts;
 };
 
+/* The order of looking alone, which costs little: rf_advice's steps. On RF_OK the caller frees
+ * *steps. RF_MEMORY. */
+enum rf_status order_of_looking(const struct rf_diagnosis *diagnosis, struct look_step **steps,
+                                size_t *n_steps, struct rf_error *error);
+
 #endif

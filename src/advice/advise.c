@@ -102,6 +102,20 @@ static enum rf_status order_looks(struct planning *p, struct rf_error *error)
     return RF_OK;
 }
 
+enum rf_status order_of_looking(const struct rf_diagnosis *diagnosis, struct look_step **steps,
+                                size_t *n_steps, struct rf_error *error)
+{
+    struct rf_advice advice = {.diagnosis = diagnosis};
+    struct planning planning = {.advice = &advice, .diagnosis = diagnosis};
+    enum rf_status status = init_planning(&planning, error);
+    if (status == RF_OK)
+        status = order_looks(&planning, error);
+    finish_planning(&planning);
+    *steps = advice.steps;
+    *n_steps = advice.n_steps;
+    return status;
+}
+
 static int by_chance(const void *a, const void *b)
 {
     const struct outcome *one = a, *other = b;

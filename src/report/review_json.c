@@ -155,6 +155,21 @@ static void add_confusion(struct writer *writer, cJSON *score)
         }
 }
 
+/* Places looked at before the find: the mean, and how the finds spread. */
+static void add_looks(struct writer *writer, cJSON *score)
+{
+    static const char *const keys[N_LOOK_BINS] = {"0", "1", "2", "3_to_5", "6_and_more", "never"};
+    const struct scorecard *of = &writer->review->score;
+    cJSON *object = add_object(writer, score, "places_before_find");
+    double jobs = (double)of->looked;
+    add_count(writer, object, "jobs", of->looked);
+    if (of->looked == 0)
+        return;
+    add_share(writer, object, "mean", (double)of->places / jobs / PARTS);
+    for (size_t i = 0; i < N_LOOK_BINS; i++)
+        add_share(writer, object, keys[i], (double)of->looks[i] / jobs / PARTS);
+}
+
 static void add_score(struct writer *writer, cJSON *root)
 {
     const struct scorecard *score = &writer->review->score;
@@ -168,6 +183,7 @@ static void add_score(struct writer *writer, cJSON *root)
                   rf_review_mean_log_posterior(writer->review));
     add_count(writer, object, "below_one_in_a_million", score->below);
     add_count(writer, object, "unexplained", score->unexplained);
+    add_looks(writer, object);
     add_calibration(writer, object);
     add_confusion(writer, object);
 }

@@ -213,6 +213,26 @@ static void say_confusion(const struct scorecard *score, struct text *out)
         }
 }
 
+static void say_looks(const struct scorecard *score, struct text *out)
+{
+    static const char *const names[N_LOOK_BINS] = {
+        "at the first place", "after 1 other", "after 2 others", "after 3 to 5",
+        "after 6 or more",    "not by the plan",
+    };
+    double jobs = (double)score->looked;
+    if (score->looked == 0)
+        return;
+    heading(out, "WHAT LOOKING BY THE PLAN WOULD HAVE COST");
+    count_line(out, "jobs with one defect", score->looked);
+    text_addf(out, "  mean places looked at before the find: %.2f\n",
+              (double)score->places / jobs / PARTS);
+    for (size_t i = 0; i < N_LOOK_BINS; i++) {
+        text_add(out, "  ");
+        cell_left(out, names[i], NAME_COLUMNS);
+        text_addf(out, "%6.1f %%\n", 100 * (double)score->looks[i] / jobs / PARTS);
+    }
+}
+
 static void say_score(const struct rf_review *review, struct text *out)
 {
     const struct scorecard *score = &review->score;
@@ -228,6 +248,7 @@ static void say_score(const struct rf_review *review, struct text *out)
     if (score->below > 0)
         text_addf(out, "  (%llu below one in a million, counted as that)\n",
                   (unsigned long long)score->below);
+    say_looks(score, out);
     say_calibration(score, out);
     say_confusion(score, out);
 }

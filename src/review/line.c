@@ -180,9 +180,10 @@ enum rf_status line_of_diagnosis(struct review_line *line, const struct rf_diagn
     line->written_off = diagnosis->misfit.written_off;
     line->other_wiring = line->verdict == VERDICT_DEFECT && is_other_wiring(&first->hypothesis);
     line->other_lengths = line->verdict != VERDICT_UNEXPLAINED && lengths_disagree(diagnosis);
-    if (diagnosis->found_known)
-        compare_found(line, diagnosis);
-    return RF_OK;
+    if (!diagnosis->found_known)
+        return RF_OK;
+    compare_found(line, diagnosis);
+    return line_count_looks(line, diagnosis, error);
 }
 
 void line_finish(struct review_line *line)

@@ -17,6 +17,9 @@ struct json_at;
 
 enum { PARTS = 1000000000 }; /* of one */
 
+/* How many places come before the find: none, 1, 2, 3 to 5, 6 and more, or the order ends first. */
+enum { N_LOOK_BINS = 6, LOOK_BIN_NEVER = 5 };
+
 enum verdict {
     VERDICT_NO_DEFECT,   /* nothing wrong carries at least four fifths */
     VERDICT_DEFECT,      /* something wrong does */
@@ -59,12 +62,18 @@ struct review_line {
         bool agrees;           /* it is part of the likeliest finding */
         int64_t log_posterior; /* 1e-9 of the natural log, ≤ 0, not below that of 1e-6 */
         bool below;            /* it was below */
+        bool looked;           /* one defect that looking can show; what follows is 0 if not */
+        int64_t places;        /* 1e-9: expected places before the find; all, where it is never */
+        int64_t looks[N_LOOK_BINS]; /* 1e-9: chances */
     } found;
 };
 
 /* Fills a zeroed line. RF_MEMORY. The caller finishes it, whatever the answer. */
 enum rf_status line_of_diagnosis(struct review_line *line, const struct rf_diagnosis *diagnosis,
                                  struct rf_error *error);
+/* Its part in that, looks.c: `found.looked` and what follows. */
+enum rf_status line_count_looks(struct review_line *line, const struct rf_diagnosis *diagnosis,
+                                struct rf_error *error);
 void line_finish(struct review_line *line); /* takes zeroed */
 
 /* Whether the readings speak against what was found: it carries less than 5 %. */

@@ -42,6 +42,21 @@ static bool add_sort(cJSON *object, const struct fault_sort *sort)
     return ok;
 }
 
+static bool add_looks(cJSON *object, const struct review_line *line)
+{
+    if (!line->found.looked)
+        return true;
+    cJSON *list = cJSON_AddArrayToObject(object, "looks");
+    bool ok = list != NULL;
+    for (size_t i = 0; i < N_LOOK_BINS && ok; i++) {
+        cJSON *item = cJSON_CreateNumber((double)line->found.looks[i]);
+        ok = item != NULL && cJSON_AddItemToArray(list, item);
+        if (!ok)
+            cJSON_Delete(item);
+    }
+    return ok && add_number(object, "places", (double)line->found.places);
+}
+
 static bool add_found(cJSON *root, const struct review_line *line)
 {
     if (!line->found.known)
@@ -51,7 +66,7 @@ static bool add_found(cJSON *root, const struct review_line *line)
               add_number(object, "rank", (double)line->found.rank) &&
               add_flag(object, "agrees", line->found.agrees) &&
               add_number(object, "log_posterior", (double)line->found.log_posterior) &&
-              add_flag(object, "below", line->found.below);
+              add_flag(object, "below", line->found.below) && add_looks(object, line);
     return add(root, "found", object) && ok;
 }
 
@@ -131,6 +146,27 @@ static enum rf_status read_sort(const struct json_at *object, struct fault_sort 
     return status;
 }
 
+static enum rf_status read_looks(const struct json_at *found, struct review_line *line,
+                                 struct rf_error *error)
+{
+    static const char needs[] = "chances as review --json writes them";
+    struct json_at looks = json_member(found, "looks");
+    if (looks.value == NULL)
+        return RF_OK;
+    line->found.looked = true;
+    enum rf_status status = json_array(&looks, N_LOOK_BINS, N_LOOK_BINS, needs, error);
+    if (status == RF_OK)
+        status = read_whole(found, "places", 0, 1e6 * PARTS, &line->found.places, error);
+    JSON_EACH (&looks, look, i) {
+        double chance = 0;
+        if (status == RF_OK)
+            status = json_number(&look, 0, PARTS, needs, &chance, error);
+        if (status == RF_OK)
+            line->found.looks[i] = (int64_t)chance;
+    }
+    return status;
+}
+
 static enum rf_status read_found(const struct json_at *found, struct review_line *line,
                                  struct rf_error *error)
 {
@@ -145,6 +181,8 @@ static enum rf_status read_found(const struct json_at *found, struct review_line
                             error);
     if (status == RF_OK)
         status = read_flag(found, "below", &line->found.below, error);
+    if (status == RF_OK)
+        status = read_looks(found, line, error);
     return status;
 }
 

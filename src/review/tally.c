@@ -85,6 +85,10 @@ static void add_score(struct scorecard *score, const struct review_line *line)
     score->log_posterior += line->found.log_posterior;
     score->confusion[line->found.sort.family][line->first.family]++;
     score->kinds[line->found.sort.family][line->found.sort.kind]++;
+    score->looked += line->found.looked;
+    score->places += line->found.places;
+    for (size_t i = 0; i < N_LOOK_BINS; i++)
+        score->looks[i] += line->found.looks[i];
     if (line->verdict == VERDICT_UNEXPLAINED) {
         score->unexplained++;
         return;
@@ -138,6 +142,10 @@ static void join_scores(struct scorecard *into, const struct scorecard *part)
     into->below += part->below;
     into->log_posterior += part->log_posterior;
     into->unexplained += part->unexplained;
+    into->looked += part->looked;
+    into->places += part->places;
+    for (size_t i = 0; i < N_LOOK_BINS; i++)
+        into->looks[i] += part->looks[i];
     for (size_t i = 0; i < CALIBRATION_BINS; i++) {
         into->calibration[i].jobs += part->calibration[i].jobs;
         into->calibration[i].right += part->calibration[i].right;

@@ -72,6 +72,12 @@ static struct review_line random_line(uint64_t *state)
         line.found.agrees = below(state, 2) == 0;
         line.found.log_posterior = -(int64_t)below(state, 1000) * 13815510;
         line.found.below = below(state, 9) == 0;
+        line.found.looked = below(state, 2) == 0;
+    }
+    if (line.found.looked) {
+        line.found.places = (int64_t)below(state, 7) * 123456789;
+        line.found.looks[below(state, N_LOOK_BINS)] = PARTS / 3;
+        line.found.looks[below(state, N_LOOK_BINS)] = PARTS / 3 * 2;
     }
     return line;
 }
