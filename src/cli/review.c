@@ -99,8 +99,8 @@ static enum rf_status read_settings(const struct invocation *invocation, struct 
     else if (strcmp(settings->rates_name, "consulted") == 0)
         settings->rates = RF_RATES_CONSULTED;
     else
-        status = fail(error, RF_USAGE, "review: --rates: found %s; needs archive or consulted",
-                      rates);
+        status =
+            fail(error, RF_USAGE, "review: --rates: found %s; needs archive or consulted", rates);
     if (status == RF_OK && threads != NULL) {
         status = read_number("threads", threads, 1, THREADS_MOST, "a whole number from 1 to 1024",
                              &number, error);
@@ -121,9 +121,9 @@ static enum rf_status load(const struct invocation *invocation, enum rf_base_rat
 /* --- one run --- */
 
 struct progress {
-    bool shown;         /* standard error is a terminal */
+    bool shown; /* standard error is a terminal */
     struct timespec start, last;
-    uint64_t bytes;     /* of the input; 0: not known */
+    uint64_t bytes; /* of the input; 0: not known */
 };
 
 struct review_context {
@@ -367,8 +367,8 @@ static enum rf_status review_all(const struct invocation *invocation, struct rf_
         status = merge ? merge_parts(invocation, &settings, &origin, review, error)
                        : review_paths(invocation, &settings, models, review, gravest, error);
     if (status == RF_OK)
-        status = put_summary(&settings, merge ? origin.models : rf_models_name(models), review,
-                             error);
+        status =
+            put_summary(&settings, merge ? origin.models : rf_models_name(models), review, error);
     if (status == RF_OK)
         status = learn(invocation, &settings, review, error);
     merge_origin_finish(&origin);

@@ -216,8 +216,8 @@ static void say_confusion(const struct scorecard *score, struct text *out)
 static void say_looks(const struct scorecard *score, struct text *out)
 {
     static const char *const names[N_LOOK_BINS] = {
-        "at the first place", "after 1 other", "after 2 others", "after 3 to 5",
-        "after 6 or more",    "not by the plan",
+        "at the first place", "after 1 other",   "after 2 others",
+        "after 3 to 5",       "after 6 or more", "not by the plan",
     };
     double jobs = (double)score->looked;
     if (score->looked == 0)
@@ -295,7 +295,9 @@ void report_review_csv(const struct review_line *line, struct text *out)
     text_addf(out, ",%.6f,%.6f,%s,%s,%s,%s,%llu,%llu\r\n", (double)line->none / PARTS,
               (double)line->danger / PARTS, sort_name(line->first.family),
               conductor_kind_names[line->first.conductor],
-              !line->found.known ? "" : line->found.agrees ? "agrees" : "disagrees",
+              !line->found.known   ? ""
+              : line->found.agrees ? "agrees"
+                                   : "disagrees",
               line->found.known ? sort_name(line->found.sort.family) : "",
               (unsigned long long)line->readings, (unsigned long long)line->written_off);
 }

@@ -82,8 +82,8 @@ static enum rf_status read_names(struct folder *folder, DIR *directory, struct r
 static enum rf_status enter_folder(struct review_input *input, char *path, struct rf_error *error)
 {
     if (input->depth == DEPTH_MAX) {
-        enum rf_status status = fail(error, RF_LIMIT, "%s: found folders %d deep; needs fewer",
-                                     path, DEPTH_MAX + 1);
+        enum rf_status status =
+            fail(error, RF_LIMIT, "%s: found folders %d deep; needs fewer", path, DEPTH_MAX + 1);
         free(path);
         return status;
     }
@@ -91,9 +91,8 @@ static enum rf_status enter_folder(struct review_input *input, char *path, struc
     *folder = (struct folder){.path = path};
     DIR *directory = opendir(path);
     enum rf_status status =
-        directory != NULL
-            ? read_names(folder, directory, error)
-            : fail(error, RF_IO, "%s: cannot be read: %s", path, strerror(errno));
+        directory != NULL ? read_names(folder, directory, error)
+                          : fail(error, RF_IO, "%s: cannot be read: %s", path, strerror(errno));
     if (directory != NULL)
         closedir(directory);
     if (status == RF_OK)

@@ -93,7 +93,8 @@ static bool is_testing_mistake(const struct rf_diagnosis *diagnosis)
 static bool is_other_wiring(const struct hypothesis *hypothesis)
 {
     for (size_t i = 0; i < hypothesis->n_faults; i++)
-        if (hypothesis->faults[i].family->metres || hypothesis->faults[i].family->fields & FIELD_CABLE)
+        if (hypothesis->faults[i].family->metres ||
+            hypothesis->faults[i].family->fields & FIELD_CABLE)
             return true;
     return false;
 }
@@ -203,7 +204,8 @@ bool line_found_disagrees(const struct review_line *line)
 
 int64_t line_worry(const struct review_line *line)
 {
-    bool defect_known = line->found.known && line->found.sort.family != family_index(&fault_family_none);
+    bool defect_known =
+        line->found.known && line->found.sort.family != family_index(&fault_family_none);
     if (line->verdict == VERDICT_NO_DEFECT || line->found.agrees ||
         (line->verdict == VERDICT_UNDECIDED && defect_known))
         return 0;

@@ -47,9 +47,9 @@ size_t n_sorts(void);                 /* families and two_defects */
 struct review_line {
     char *job, *words; /* the job's name; the likeliest finding */
     enum verdict verdict;
-    int64_t confidence; /* of that finding */
-    int64_t none;       /* that nothing is wrong */
-    int64_t danger;     /* that something would hurt if it were re-energised */
+    int64_t confidence;      /* of that finding */
+    int64_t none;            /* that nothing is wrong */
+    int64_t danger;          /* that something would hurt if it were re-energised */
     struct fault_sort first; /* the likeliest hypothesis */
     bool testing;            /* it is a mistake in testing, to be seen at faces or the board */
     uint64_t readings, written_off;

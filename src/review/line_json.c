@@ -177,8 +177,8 @@ static enum rf_status read_found(const struct json_at *found, struct review_line
     if (status == RF_OK)
         status = read_flag(found, "agrees", &line->found.agrees, error);
     if (status == RF_OK)
-        status = read_whole(found, "log_posterior", -20.0 * PARTS, 0, &line->found.log_posterior,
-                            error);
+        status =
+            read_whole(found, "log_posterior", -20.0 * PARTS, 0, &line->found.log_posterior, error);
     if (status == RF_OK)
         status = read_flag(found, "below", &line->found.below, error);
     if (status == RF_OK)

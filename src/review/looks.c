@@ -90,9 +90,8 @@ enum rf_status line_count_looks(struct review_line *line, const struct rf_diagno
     if (!diagnosis->found_known || diagnosis->found.n_faults != 1)
         return RF_OK;
     const struct fault *fault = &diagnosis->found.faults[0];
-    struct counting counting = {.job = diagnosis->job,
-                                .each_enough = fault->family->each_enough,
-                                .earliest = (size_t)-1};
+    struct counting counting = {
+        .job = diagnosis->job, .each_enough = fault->family->each_enough, .earliest = (size_t)-1};
     enum rf_status status = order_of_looking(diagnosis, &steps, &counting.n_steps, error);
     counting.steps = steps;
     if (status == RF_OK)

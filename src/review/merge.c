@@ -17,7 +17,7 @@ const char diagnosis_format[] = "ringfettle-diagnosis/1";
 struct part {
     struct merge_origin *origin;
     struct rf_review *review;
-    uint64_t jobs;      /* since the last summary */
+    uint64_t jobs; /* since the last summary */
     uint64_t summaries;
 };
 
@@ -115,8 +115,8 @@ static enum rf_status merge_line(struct part *part, const char *bytes, size_t le
     struct json_at at = json_member(&document, "format");
     status = json_choice(&at, formats, 2, &format, error);
     if (status == RF_OK)
-        status = format == 0 ? merge_job(part, &document, error)
-                             : merge_summary(part, &document, error);
+        status =
+            format == 0 ? merge_job(part, &document, error) : merge_summary(part, &document, error);
     cJSON_Delete(tree);
     return status;
 }
@@ -133,9 +133,8 @@ static enum rf_status merge_stream(struct part *part, FILE *file, const char *na
     while (status == RF_OK && (length = getline(&line, &room, file)) >= 0) {
         text_clear(&source);
         text_addf(&source, "%s:%zu", name, ++number);
-        status = source.failed
-                     ? fail_memory(error)
-                     : merge_line(part, line, (size_t)length, source.bytes, error);
+        status = source.failed ? fail_memory(error)
+                               : merge_line(part, line, (size_t)length, source.bytes, error);
         errno = 0;
     }
     if (status == RF_OK && errno == ENOMEM)
@@ -147,8 +146,8 @@ static enum rf_status merge_stream(struct part *part, FILE *file, const char *na
     return status;
 }
 
-enum rf_status review_merge(const char *path, struct merge_origin *origin,
-                            struct rf_review *review, struct rf_error *error)
+enum rf_status review_merge(const char *path, struct merge_origin *origin, struct rf_review *review,
+                            struct rf_error *error)
 {
     bool standard_input = strcmp(path, "-") == 0;
     const char *name = standard_input ? "standard input" : path;
@@ -160,8 +159,8 @@ enum rf_status review_merge(const char *path, struct merge_origin *origin,
     if (!standard_input)
         fclose(file);
     if (status == RF_OK && (part.jobs > 0 || part.summaries == 0))
-        status = fail(error, RF_REFUSED,
-                      "%s: found no summary at the end; needs the whole output of review --json",
-                      name);
+        status =
+            fail(error, RF_REFUSED,
+                 "%s: found no summary at the end; needs the whole output of review --json", name);
     return status;
 }

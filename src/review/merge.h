@@ -21,7 +21,7 @@ extern const char review_format[]; /* of a summary */
 extern const char diagnosis_format[];
 
 /* Counts a file ("-": standard input) in. RF_SYNTAX, RF_REFUSED, RF_IO, RF_MEMORY. */
-enum rf_status review_merge(const char *path, struct merge_origin *origin,
-                            struct rf_review *review, struct rf_error *error);
+enum rf_status review_merge(const char *path, struct merge_origin *origin, struct rf_review *review,
+                            struct rf_error *error);
 
 #endif

@@ -28,11 +28,11 @@ struct scorecard {
     uint64_t below;              /* confidence below 1e-6, counted as that */
     int64_t log_posterior;       /* sum, 1e-9 */
     struct calibration_bin calibration[CALIBRATION_BINS];
-    uint64_t unexplained;                     /* left out of the calibration */
-    uint64_t looked;                          /* jobs whose one defect looking can show */
-    int64_t places;                           /* sum over them, 1e-9 */
-    int64_t looks[N_LOOK_BINS];               /* likewise */
-    uint64_t confusion[MAX_SORTS][MAX_SORTS]; /* [found][likeliest] */
+    uint64_t unexplained;                        /* left out of the calibration */
+    uint64_t looked;                             /* jobs whose one defect looking can show */
+    int64_t places;                              /* sum over them, 1e-9 */
+    int64_t looks[N_LOOK_BINS];                  /* likewise */
+    uint64_t confusion[MAX_SORTS][MAX_SORTS];    /* [found][likeliest] */
     uint64_t kinds[MAX_SORTS][MODELS_MAX_KINDS]; /* [found][kind] */
 };
 

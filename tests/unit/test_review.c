@@ -123,8 +123,10 @@ static void assert_same(const struct rf_review *one, const struct rf_review *oth
 START_TEST(score_by_hand)
 {
     struct rf_review *review = create();
-    struct review_line line = {.job = (char[]){"a"}, .words = (char[]){"w"},
-                               .confidence = PARTS, .verdict = VERDICT_DEFECT,
+    struct review_line line = {.job = (char[]){"a"},
+                               .words = (char[]){"w"},
+                               .confidence = PARTS,
+                               .verdict = VERDICT_DEFECT,
                                .first.family = family_of("joint")};
     line.found.known = true;
     line.found.agrees = true;
@@ -133,7 +135,7 @@ START_TEST(score_by_hand)
     add(review, &line); /* first, right, 1.0 said */
     line.found.rank = 2;
     line.confidence = PARTS / 10 * 9;
-    add(review, &line); /* third */
+    add(review, &line);   /* third */
     line.found.rank = -1; /* not listed: though nothing else may be listed either */
     line.found.agrees = false;
     line.found.below = true;
@@ -307,10 +309,10 @@ START_TEST(learned_by_hand)
     struct rf_error error;
     char *text;
     ck_assert_int_eq(rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error), RF_OK);
-    add_found(review, "contact", 0, 8);  /* open */
-    add_found(review, "contact", 1, 2);  /* high */
+    add_found(review, "contact", 0, 8); /* open */
+    add_found(review, "contact", 1, 2); /* high */
     add_found(review, "none", 0, 9);
-    add_found(review, "two", 0, 5);      /* says nothing about one */
+    add_found(review, "two", 0, 5); /* says nothing about one */
     ck_assert_int_eq(rf_review_learn(review, models, 50, &text, &error), RF_REFUSED);
     ck_assert_ptr_null(text);
     ck_assert_ptr_nonnull(strstr(error.text, "19"));
