@@ -63,7 +63,7 @@ static void say_outcomes(const struct plan *plan, struct text *out)
     text_add(out, ".");
 }
 
-static void say_reads(const struct rf_job *job, const struct plan *plan, struct text *out)
+void say_reads(const struct rf_job *job, const struct plan *plan, struct text *out)
 {
     if (plan->setup_in_place)
         text_add(out, "With the links as they are, ");
@@ -77,8 +77,7 @@ static void say_reads(const struct rf_job *job, const struct plan *plan, struct 
         text_add(out, i == 0 ? " " : ", then ");
         say_where(job, &plan->reads[i], out);
     }
-    text_add(out, plan->n_reads > 1 ? ", as long as it is not settled. First reading:"
-                                    : ". The reading:");
+    text_add(out, plan->n_reads > 1 ? ", as long as it is not settled." : ".");
 }
 
 bool write_read_words(const struct rf_diagnosis *diagnosis, struct plan *plan, size_t n,
@@ -94,6 +93,7 @@ bool write_read_words(const struct rf_diagnosis *diagnosis, struct plan *plan, s
     struct text words = {0};
     if (ok) {
         say_reads(diagnosis->job, plan, &words);
+        text_add(&words, plan->n_reads > 1 ? " First reading:" : " The reading:");
         say_outcomes(plan, &words);
     }
     plan->words = words.bytes;

@@ -20,4 +20,8 @@ void say_meter(size_t setup, struct text *out);
 /* … and where: "at P6", "at the outgoing ends". */
 void say_where(const struct rf_job *job, const struct measurement *read, struct text *out);
 
+/* A plan's readings, from the connection to the last place, as a sentence. */
+struct plan;
+void say_reads(const struct rf_job *job, const struct plan *plan, struct text *out);
+
 #endif

@@ -39,6 +39,8 @@ void say_where_first(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_findings(const struct rf_diagnosis *diagnosis, struct said *said);
 /* The plan; `advice` NULL: nothing. */
 void say_next(const struct rf_advice *advice, struct said *said);
+/* Of the first plan, which there must be: its minutes, and those to the find. */
+void say_cost(const struct rf_advice *advice, struct said *said);
 void say_blind_spots(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_figures(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_cautions(const struct rf_diagnosis *diagnosis, struct said *said);

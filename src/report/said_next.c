@@ -18,7 +18,7 @@ static void add_plain(struct said *said, struct text *words)
 }
 
 /* What it costs, and how far off the find is with it and without. */
-static void say_cost(const struct rf_advice *advice, struct said *said)
+void say_cost(const struct rf_advice *advice, struct said *said)
 {
     const struct plan *plan = &advice->plans[0];
     struct text words = {0};
