@@ -464,7 +464,8 @@ static void doubt(const struct asking *asking, const struct question *question)
                 say("over range here.");
             else
                 printf("%.2f (%.2f to %.2f).", expected.ohms, expected.low, expected.high);
-            say(" Probes home, switch on? b reads it again.\n");
+            say(read.spot == SPOT_POINT ? " Probes home, switch on? b reads it again.\n"
+                                        : " b reads it again.\n");
         }
     }
     rf_job_destroy(job);

@@ -37,7 +37,9 @@ static bool name_value(const struct json_origin *base, const cJSON *value, struc
     const struct origin *origin = (const struct origin *)base;
     struct site key = {.value = value};
     const struct site *site =
-        bsearch(&key, origin->sites, origin->n_sites, sizeof key, compare_sites);
+        origin->n_sites > 0
+            ? bsearch(&key, origin->sites, origin->n_sites, sizeof key, compare_sites)
+            : NULL;
     if (site == NULL)
         return false;
     sheet_name_cell(&origin->grid, site->row, site->column, out);

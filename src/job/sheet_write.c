@@ -7,6 +7,7 @@
 #include "job/sheet_grid.h"
 #include "job/sheet_text.h"
 
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -74,6 +75,26 @@ static void add_plain(struct writing *writing, const cJSON *value)
         sheet_add_text(value->valuestring, &writing->cell);
 }
 
+/* A reading with two decimals, as a meter shows it, where it has no more. */
+static void add_ohms(struct writing *writing, const cJSON *value)
+{
+    char digits[32];
+    if (!cJSON_IsNumber(value) || value->valuedouble < 0 || value->valuedouble > 1000) {
+        add_plain(writing, value);
+        return;
+    }
+    snprintf(digits, sizeof digits, "%.2f", value->valuedouble);
+    double back = strtod(digits, NULL);
+    if (back < value->valuedouble || back > value->valuedouble) {
+        add_plain(writing, value);
+        return;
+    }
+    for (char *at = digits; *at != '\0'; at++) /* whatever mark the program's locale has */
+        if (*at < '0' || *at > '9')
+            *at = writing->style->decimal;
+    text_add(&writing->cell, digits);
+}
+
 /* Readings, a space between repeats. */
 static void add_readings(struct writing *writing, const cJSON *value)
 {
@@ -81,7 +102,7 @@ static void add_readings(struct writing *writing, const cJSON *value)
     for (const cJSON *one = first; one != NULL; one = value == first ? NULL : one->next) {
         if (one != first)
             text_add(&writing->cell, " ");
-        add_plain(writing, one);
+        add_ohms(writing, one);
     }
 }
 
