@@ -13,8 +13,9 @@ extern "C" {
 struct rf_models;
 
 /* How often what goes wrong: `consulted` for a job somebody looks at because something seems
- * wrong, `archive` for jobs that were filed. The second is mostly `none`. */
-enum rf_base_rates { RF_RATES_CONSULTED, RF_RATES_ARCHIVE };
+ * wrong, `archive` for jobs that were filed, mostly without a defect, `certain` where it is known
+ * that there is one, whatever the readings say. */
+enum rf_base_rates { RF_RATES_CONSULTED, RF_RATES_ARCHIVE, RF_RATES_CERTAIN };
 
 /*
  * The models compiled into the library (`directory` NULL), or those of a directory that holds

@@ -8,9 +8,9 @@
 #include <string.h>
 
 enum {
-    PLANS_MOST = 4,         /* the advice, up to two set-ups besides, and looking */
-    HYPOTHESES_MOST = 100,  /* that the plan weighs */
-    READS_NAMED = 3         /* of a plan: the first, and what would follow */
+    READ_PLANS_MOST = 3,   /* the advice, and up to two other set-ups */
+    HYPOTHESES_MOST = 100, /* that the plan weighs */
+    READS_NAMED = 3        /* of a plan: the first, and what would follow */
 };
 
 /* The plan weighs the likeliest that make up this share of the confidence listed. */
@@ -185,24 +185,27 @@ static bool add_look_plan(struct planning *p)
     return write_look_words(p->diagnosis, plan);
 }
 
-/* The best first: reading plans that save, looking where nothing saves more than it. */
+/* The best first: readings that save most against looking only; or a look, where none does, or where
+ * looking at one place and then going on as best one can is better still. */
 static enum rf_status choose_plans(struct planning *p, struct rf_error *error)
 {
     struct rf_advice *advice = p->advice;
     struct choice choices[N_SETUPS];
     size_t n = measuring_choose(p->measuring, p->weights, choices);
     bool ok = true, can_look = advice->n_steps > 0;
-    advice->plans = NEW_ARRAY(struct plan, PLANS_MOST);
+    advice->plans = NEW_ARRAY(struct plan, READ_PLANS_MOST + 1);
     if (advice->plans == NULL)
         return fail_memory(error);
     while (n > 0 && advice->look_now - choices[n - 1].value < worth_saving)
         n--;
     advice->measure_first = n > 0 ? choices[0].value : advice->look_now;
-    if (n == 0 && can_look)
+    bool look_first = can_look && (n == 0 || measuring_look_first(p->measuring, p->weights) <
+                                                 choices[0].value);
+    if (look_first)
         ok = add_look_plan(p);
-    for (size_t i = 0; i < n && i < PLANS_MOST - 1 && ok; i++)
+    for (size_t i = 0; i < n && i < READ_PLANS_MOST && ok; i++)
         ok = add_read_plan(p, &choices[i]);
-    if (n > 0 && can_look && ok)
+    if (can_look && !look_first && ok)
         ok = add_look_plan(p);
     advice->stop = advice->n_plans == 0;
     if (advice->stop && ok)

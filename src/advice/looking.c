@@ -148,6 +148,7 @@ static void condition_shares(struct looking *l)
         double left = l->left[s->hypothesis * FAULTS_AT_ONCE + s->part];
         if (!s->each_enough && left > 0.0)
             s->share = fmin(1.0, s->share / left);
+        s->recorded_share = s->share;
     }
 }
 
@@ -294,4 +295,45 @@ double looking_expected(struct looking *l, const double weights[], struct look_s
     if (n_steps != NULL)
         *n_steps = n < most ? n : most;
     return expected;
+}
+
+size_t looking_best(struct looking *l, const double weights[], double *minutes)
+{
+    double total = 0.0;
+    for (size_t h = 0; h < l->n_hypotheses; h++)
+        total += weights[h];
+    start_anew(l, weights);
+    size_t location = best_location(l, 1e-12 * total);
+    if (location < l->n_locations)
+        *minutes = cost_of(l, location);
+    return location;
+}
+
+/* One part of a hypothesis did not show at a location. */
+static void condition_part(struct looking *l, const struct showing *seen, double *weight)
+{
+    double left = seen->each_enough ? 0.0 : fmax(0.0, 1.0 - seen->share);
+    *weight *= left;
+    for (size_t i = l->first_of_hypothesis[seen->hypothesis];
+         i < l->first_of_hypothesis[seen->hypothesis + 1]; i++) {
+        struct showing *s = &l->showings[i];
+        if (s->part != seen->part || s == seen || s->each_enough)
+            continue;
+        s->share = left > 1e-9 ? fmin(1.0, s->share / left) : 0.0;
+    }
+}
+
+void looking_rule_out(struct looking *l, size_t location, double weights[])
+{
+    for (size_t k = l->first_at[location]; k < l->first_at[location + 1]; k++) {
+        struct showing *seen = &l->showings[l->showings_at[k]];
+        condition_part(l, seen, &weights[seen->hypothesis]);
+        seen->share = 0.0;
+    }
+}
+
+void looking_restore(struct looking *l)
+{
+    for (size_t i = 0; i < l->n_showings; i++)
+        l->showings[i].share = l->showings[i].recorded_share;
 }

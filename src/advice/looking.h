@@ -22,7 +22,7 @@ struct location {
 /* One way a hypothesis shows at a location. */
 struct showing {
     size_t hypothesis, part, location;
-    double share;
+    double share, recorded_share;
     bool each_enough;
 };
 
@@ -65,5 +65,13 @@ void looking_finish(struct looking *looking); /* takes zeroed */
  */
 double looking_expected(struct looking *looking, const double weights[], struct look_step steps[],
                         size_t most, size_t *n_steps);
+
+/* The first of those looks (an index into locations, n_locations: none) and its minutes. */
+size_t looking_best(struct looking *looking, const double weights[], double *minutes);
+
+/* Nothing showed at a location: takes that from the weights, and makes the shares those of what is
+ * left. `looking_restore` puts the shares back. */
+void looking_rule_out(struct looking *looking, size_t location, double weights[]);
+void looking_restore(struct looking *looking);
 
 #endif

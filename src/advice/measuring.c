@@ -33,6 +33,7 @@ struct measuring {
     double *known;      /* [hypothesis] minutes of looking if it were known */
     size_t first[N_SETUPS + 1]; /* candidates of a set-up: first[s] … first[s+1]−1 */
     bool *taken;        /* [candidate] in the branch at hand */
+    double *after_look; /* [hypothesis] */
     struct level levels[MOST_DEPTH + 1];
 };
 
@@ -48,6 +49,7 @@ void measuring_destroy(struct measuring *m)
     free(m->sorted);
     free(m->known);
     free(m->taken);
+    free(m->after_look);
     free(m);
 }
 
@@ -102,7 +104,8 @@ struct measuring *measuring_create(const struct rf_diagnosis *diagnosis, struct 
     m->sorted = NEW_ARRAY(size_t, n * h);
     m->known = NEW_ARRAY(double, h);
     m->taken = NEW_ARRAY(bool, n);
-    bool ok = m->sorted != NULL && m->known != NULL && m->taken != NULL;
+    m->after_look = NEW_ARRAY(double, h);
+    bool ok = m->sorted != NULL && m->known != NULL && m->taken != NULL && m->after_look != NULL;
     for (size_t i = 0; i <= MOST_DEPTH; i++) {
         struct level *level = &m->levels[i];
         level->after = NEW_ARRAY(double, h *MOST_OUTCOMES);
@@ -356,6 +359,26 @@ size_t measuring_choose(struct measuring *m, const double weights[], struct choi
     while (saving < n && choices[saving].value < look)
         saving++;
     return saving;
+}
+
+double measuring_look_first(struct measuring *m, const double weights[])
+{
+    struct choice choices[N_SETUPS];
+    double total = sum_of(weights, m->n_hypotheses), minutes = 0.0;
+    size_t location = looking_best(m->looking, weights, &minutes);
+    if (location == m->looking->n_locations)
+        return INFINITY;
+    double *after = m->after_look;
+    memcpy(after, weights, m->n_hypotheses * sizeof *after);
+    looking_rule_out(m->looking, location, after);
+    double left = sum_of(after, m->n_hypotheses), value = 0.0;
+    if (left > 0.0) {
+        value = looking_expected(m->looking, after, NULL, 0, NULL);
+        if (measuring_choose(m, after, choices) > 0)
+            value = choices[0].value;
+    }
+    looking_restore(m->looking);
+    return minutes + value * left / total;
 }
 
 size_t measuring_follow(struct measuring *m, const double weights[], size_t candidate,

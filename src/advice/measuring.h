@@ -41,6 +41,13 @@ void measuring_destroy(struct measuring *measuring); /* takes NULL */
 size_t measuring_choose(struct measuring *measuring, const double weights[],
                         struct choice choices[]);
 
+/*
+ * Expected minutes to the find by looking at the first place in the order of looking and, where
+ * nothing shows, going on with the best of looking and reading. INFINITY where there is nothing to
+ * look at.
+ */
+double measuring_look_first(struct measuring *measuring, const double weights[]);
+
 /* The readings that would follow `candidate` in its set-up if the likeliest came out each time, as
  * long as one saves anything: up to `most` candidates; returns how many. */
 size_t measuring_follow(struct measuring *measuring, const double weights[], size_t candidate,

@@ -70,14 +70,45 @@ const char *option_value(const struct invocation *invocation, const char *name)
     return NULL;
 }
 
-enum rf_status load_models(const struct invocation *invocation, struct rf_models **models)
+static enum rf_status load_at(const struct invocation *invocation, enum rf_base_rates rates,
+                              struct rf_models **models)
 {
     struct rf_error error;
     enum rf_status status =
-        rf_models_load(option_value(invocation, "models"), RF_RATES_CONSULTED, models, &error);
+        rf_models_load(option_value(invocation, "models"), rates, models, &error);
     if (status != RF_OK)
         complain_of(&error);
     return status;
+}
+
+enum rf_status load_models(const struct invocation *invocation, struct rf_models **models)
+{
+    return load_at(invocation, RF_RATES_CONSULTED, models);
+}
+
+/* The base rates of that name; complains of others. */
+static enum rf_status find_rates(const struct command *command, const char *name,
+                                 enum rf_base_rates *rates)
+{
+    static const char *const names[] = {[RF_RATES_CONSULTED] = "consulted",
+                                        [RF_RATES_ARCHIVE] = "archive",
+                                        [RF_RATES_CERTAIN] = "certain"};
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++)
+        if (strcmp(name, names[i]) == 0) {
+            *rates = (enum rf_base_rates)i;
+            return RF_OK;
+        }
+    complain_usage(command, "--rates: found %s; needs consulted, archive or certain", name);
+    return RF_USAGE;
+}
+
+enum rf_status load_models_and_rates(const struct invocation *invocation, const char *usual,
+                                     struct rf_models **models)
+{
+    const char *asked = option_value(invocation, "rates");
+    enum rf_base_rates rates = RF_RATES_CONSULTED;
+    enum rf_status status = find_rates(invocation->command, asked != NULL ? asked : usual, &rates);
+    return status == RF_OK ? load_at(invocation, rates, models) : status;
 }
 
 /* --- jobs --- */

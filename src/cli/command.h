@@ -54,8 +54,11 @@ struct invocation {
  * command's. */
 const char *option_value(const struct invocation *invocation, const char *name);
 
-/* The models asked for (`--models`), or those compiled in; complains. */
+/* The models asked for (`--models`), or those compiled in; complains. The second takes the base
+ * rates asked for (`--rates`), or else those named `usual`. */
 enum rf_status load_models(const struct invocation *invocation, struct rf_models **models);
+enum rf_status load_models_and_rates(const struct invocation *invocation, const char *usual,
+                                     struct rf_models **models);
 
 /* A line on standard error: "ringfettle: …". */
 void complain(const char *format, ...) RF_PRINTF(1, 2);

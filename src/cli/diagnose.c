@@ -64,7 +64,7 @@ static enum rf_status one_job(void *context, const struct rf_job *job, struct rf
 static enum rf_class run(const struct invocation *invocation)
 {
     struct rf_models *models = NULL;
-    enum rf_status status = load_models(invocation, &models);
+    enum rf_status status = load_models_and_rates(invocation, "consulted", &models);
     if (status != RF_OK)
         return rf_status_class(status);
     struct context context = {
@@ -86,17 +86,20 @@ const struct command command_diagnose = {
         "Compares every plausible defect and testing mistake with the readings and reports what "
         "they show: what would be dangerous first, then what can be checked without a screw, "
         "where to look, what to do next, what the readings could not show, the readings beside "
-        "what fits them, "
-        "and the figures for a schedule of test results.\n\n"
+        "what fits them, and the figures for a schedule of test results.\n\n"
         "JOB is a file of one job, or of one job a line; - reads standard input. A job that is "
         "refused is named on standard error; the others are reported all the same.",
-    .n_options = 4,
+    .n_options = 5,
     .options =
         {
             {"json", NULL, "one JSON object a job, each on a line, instead of text"},
             {"page", "FILE", "write a page to look at, HTML that needs no network, to FILE (- is "
                              "standard output) instead of text"},
             {"no-plan", NULL, "leave out what to do next: faster, for archives"},
+            {"rates", "NAME",
+             "how often what goes wrong: consulted, for a job somebody looks into; archive, mostly "
+             "nothing; certain, where it is known that there is a defect, whatever shows; else "
+             "consulted"},
             {"models", "DIR", "take the models from DIR instead of those compiled in"},
         },
     .least = 1,

@@ -110,16 +110,19 @@ static enum rf_status read_source(enum model_file file, const struct source *sou
     return status;
 }
 
-/* Filed jobs: `none` has its share of them, the others keep their proportions. */
-static void take_archive_rates(struct rf_models *models)
+/* Where a defect is certain, "none" keeps a trace, so that its logarithm is a number. */
+static const double trace = 1e-9;
+
+/* `none` gets another share, the others keep their proportions. */
+static void take_rates(struct rf_models *models, double none)
 {
     double defects = 1 - models_family(models, "none")->prior;
     for (size_t i = 0; i < models->n_families; i++) {
         struct family_prior *family = &models->families[i];
         if (strcmp(family->name, "none") == 0)
-            family->prior = models->archive_none;
+            family->prior = none;
         else
-            family->prior *= (1 - models->archive_none) / defects;
+            family->prior *= (1 - none) / defects;
     }
 }
 
@@ -147,7 +150,9 @@ enum rf_status rf_models_load(const char *directory, enum rf_base_rates rates,
     for (int i = 0; status == RF_OK && i < N_MODEL_FILES; i++)
         status = read_source((enum model_file)i, &sources[i], made, error);
     if (status == RF_OK && rates == RF_RATES_ARCHIVE)
-        take_archive_rates(made);
+        take_rates(made, made->archive_none);
+    if (status == RF_OK && rates == RF_RATES_CERTAIN)
+        take_rates(made, trace);
     for (int i = 0; i < N_MODEL_FILES; i++) {
         text_finish(&sources[i].name);
         text_finish(&sources[i].bytes);

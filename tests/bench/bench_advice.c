@@ -10,6 +10,7 @@
  *   skilled    join the pair of the faulty conductor at one leg (4 minutes), halve by plugging in
  *              (1 minute a reading), then the last run's ends, then inside it
  *
+ * When a plan would stop, it is told that there is a defect, as the player knows, and goes on.
  * Counted: minutes to the find, and minutes before the look that finds it, which no plan can save.
  * Usage: bench_advice [jobs [seed]].
  */
@@ -36,6 +37,7 @@ struct game {
     double before_find;
     bool found;
     bool reached_lead;
+    const struct rf_models *certain; /* taken for `models` once the plan would stop */
 };
 
 struct tally {
@@ -155,33 +157,9 @@ static bool look_first_new(struct game *game, const struct look_step steps[], si
     return false;
 }
 
-/* The advice has stopped, but there is a defect: on in the same order, without its limit. */
-static bool look_on(struct game *game, const struct rf_diagnosis *diagnosis)
-{
-    struct looking looking;
-    struct rf_error error;
-    size_t n = 0;
-    double *weights = calloc(diagnosis->n_ranked, sizeof *weights);
-    if (weights == NULL || looking_init(&looking, diagnosis, diagnosis->n_ranked, &error) != RF_OK)
-        exit(1);
-    looking.stop_share = 0.0;
-    for (size_t i = 0; i < diagnosis->n_ranked; i++)
-        weights[i] = diagnosis->ranked[i].confidence;
-    struct look_step *steps = calloc(looking.n_locations + 1, sizeof *steps);
-    if (steps == NULL)
-        exit(1);
-    looking_expected(&looking, weights, steps, looking.n_locations, &n);
-    bool looked = look_first_new(game, steps, n);
-    free(steps);
-    free(weights);
-    looking_finish(&looking);
-    return looked;
-}
-
 static void look_in_order(struct game *game, const struct rf_advice *advice)
 {
-    if (!look_first_new(game, advice->steps, advice->n_steps) &&
-        !look_on(game, advice->diagnosis))
+    if (!look_first_new(game, advice->steps, advice->n_steps))
         look_anywhere(game);
 }
 
@@ -233,7 +211,11 @@ static void play_looking(struct game *game)
         if (rf_diagnose(game->job, game->models, &diagnosis, &error) != RF_OK ||
             rf_advise(diagnosis, &advice, &error) != RF_OK)
             die(&error);
-        size_t looks = advice->n_steps > 0 ? advice->n_steps : 1;
+        size_t looks = advice->n_steps;
+        if (looks == 0 && game->models == game->certain)
+            look_anywhere(game);
+        if (looks == 0)
+            game->models = game->certain;
         for (size_t i = 0; i < looks && !game->found; i++)
             look_in_order(game, advice);
         rf_advice_destroy(advice);
@@ -267,7 +249,9 @@ static void play_planner(struct game *game)
                    advice->measure_first);
             text_finish(&t);
         }
-        if (advice->n_plans > 0 && advice->plans[0].action == ACTION_READ)
+        if (advice->n_plans == 0 && game->models != game->certain)
+            game->models = game->certain;
+        else if (advice->n_plans > 0 && advice->plans[0].action == ACTION_READ)
             take_reading(game, &advice->plans[0]);
         else
             look_in_order(game, advice);
@@ -289,7 +273,8 @@ static struct rf_job *copy_job(const struct truth *truth)
     return job;
 }
 
-static void play_both(const struct truth *truth, const struct rf_models *models, bool on_ring)
+static void play_both(const struct truth *truth, const struct rf_models *models,
+                      const struct rf_models *certain, bool on_ring)
 {
     for (int measure = 0; measure < 2; measure++) {
         struct game *game = calloc(1, sizeof *game);
@@ -297,6 +282,7 @@ static void play_both(const struct truth *truth, const struct rf_models *models,
             exit(1);
         game->truth = truth;
         game->models = models;
+        game->certain = certain;
         game->job = copy_job(truth);
         if (measure)
             play_planner(game);
@@ -374,10 +360,11 @@ int main(int argc, char **argv)
 {
     size_t jobs = argc > 1 ? strtoul(argv[1], NULL, 10) : 300;
     uint32_t seed = argc > 2 ? (uint32_t)strtoul(argv[2], NULL, 10) : 20260;
-    struct rf_models *models = NULL;
+    struct rf_models *models = NULL, *certain = NULL;
     struct rf_error error;
     gsl_set_error_handler_off();
-    if (rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error) != RF_OK)
+    if (rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error) != RF_OK ||
+        rf_models_load(NULL, RF_RATES_CERTAIN, &certain, &error) != RF_OK)
         die(&error);
     for (size_t i = 0; i < jobs; i++) {
         struct rf_job *ring = NULL;
@@ -387,7 +374,7 @@ int main(int argc, char **argv)
             simulate(ring, models, &simulation, &truth, &error) != RF_OK)
             die(&error);
         bool on_ring = break_or_joint_on_ring(truth);
-        play_both(truth, models, on_ring);
+        play_both(truth, models, certain, on_ring);
         if (on_ring) {
             halve(truth, false, &halving);
             halve(truth, true, &skilled);
@@ -410,5 +397,6 @@ int main(int argc, char **argv)
            1e3 * diagnosis_seconds / (double)jobs, 1e3 * advice_seconds / (double)jobs,
            advice_seconds / diagnosis_seconds);
     rf_models_destroy(models);
+    rf_models_destroy(certain);
     return 0;
 }
