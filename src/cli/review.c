@@ -11,6 +11,7 @@
 #include <cjson/cJSON.h>
 #include <errno.h>
 #include <fcntl.h>
+#include <math.h>
 #include <signal.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -121,7 +122,8 @@ static enum rf_status load(const struct invocation *invocation, enum rf_base_rat
 /* --- one run --- */
 
 struct progress {
-    bool shown; /* standard error is a terminal */
+    bool wanted; /* standard error is a terminal */
+    bool stands; /* a line of it is there, to be written over */
     struct timespec start, last;
     uint64_t bytes; /* of the input; 0: not known */
 };
@@ -143,16 +145,19 @@ static double seconds_since(const struct timespec *then)
     return (double)(now.tv_sec - then->tv_sec) + 1e-9 * (double)(now.tv_nsec - then->tv_nsec);
 }
 
-static void clear_progress(const struct progress *progress)
+static void clear_progress(struct progress *progress)
 {
-    if (progress->shown)
+    if (progress->stands)
         fputs("\r\033[K", stderr);
+    progress->stands = false;
 }
 
-static void show_progress(struct review_context *in)
+/* "640 jobs, 31.2 a second, 4:07 left" */
+static void show_progress(void *context)
 {
+    struct review_context *in = context;
     struct progress *progress = &in->progress;
-    if (!progress->shown || seconds_since(&progress->last) < 0.5)
+    if (!progress->wanted || seconds_since(&progress->last) < 0.5)
         return;
     clock_gettime(CLOCK_MONOTONIC, &progress->last);
     double elapsed = seconds_since(&progress->start);
@@ -161,11 +166,11 @@ static void show_progress(struct review_context *in)
     fprintf(stderr, "%llu jobs, %.1f a second", (unsigned long long)in->review->jobs,
             (double)in->review->jobs / elapsed);
     if (progress->bytes > 0 && done > 0) {
-        double left = elapsed * ((double)progress->bytes - done) / done;
-        fprintf(stderr, ", %.0f:%02.0f left", left / 60 - 0.5 > 0 ? (double)(long)(left / 60) : 0.0,
-                (double)((long)left % 60));
+        long left = lround(fmax(0, elapsed * ((double)progress->bytes - done) / done));
+        fprintf(stderr, ", %ld:%02ld left", left / 60, left % 60);
     }
     fflush(stderr);
+    progress->stands = true;
 }
 
 /* The diagnosis with what a merge needs as its last member. */
@@ -217,7 +222,6 @@ static enum rf_status accept(void *context, const struct review_line *line, cons
         status = put_csv(in, &row, error);
         text_finish(&row);
     }
-    show_progress(in);
     return status;
 }
 
@@ -261,15 +265,15 @@ static enum rf_status review_paths(const struct invocation *invocation,
         .settings = settings,
         .csv_path = option_value(invocation, "csv"),
         .review = review,
-        .progress.shown = isatty(STDERR_FILENO) == 1,
+        .progress.wanted = isatty(STDERR_FILENO) == 1,
     };
-    const struct review_sink sink = {&context, render, accept, refuse};
+    const struct review_sink sink = {&context, render, accept, refuse, show_progress};
     enum rf_status status =
         review_input_open(invocation->operands, invocation->n_operands, &input, error);
     if (status == RF_OK)
         status = open_csv(&context, error);
     if (status == RF_OK) {
-        if (context.progress.shown)
+        if (context.progress.wanted)
             context.progress.bytes =
                 review_input_bytes(invocation->operands, invocation->n_operands);
         clock_gettime(CLOCK_MONOTONIC, &context.progress.start);

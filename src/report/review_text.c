@@ -271,7 +271,7 @@ void report_review_text(const struct rf_review *review, struct text *out)
 void report_review_csv_heading(struct text *out)
 {
     text_add(out, "job,verdict,confidence,finding,nothing_wrong,danger,family,conductor,found,"
-                  "found_family,readings,written_off\r\n");
+                  "found_family,record_disagrees,readings,written_off\r\n");
 }
 
 /* A cell that a spreadsheet would take for a formula gets an apostrophe, which it takes for "this
@@ -287,17 +287,28 @@ static void add_cell(struct text *out, const char *words)
     text_finish(&cell);
 }
 
+/* In what the record and the readings disagree: "found", "found and lengths", … */
+static void add_disagreement(struct text *out, const struct review_line *line)
+{
+    const char *const names[] = {"found", "wiring", "lengths"};
+    const bool holds[] = {line_found_disagrees(line), line->other_wiring, line->other_lengths};
+    size_t n = 0;
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++)
+        if (holds[i])
+            text_addf(out, "%s%s", n++ > 0 ? " and " : "", names[i]);
+}
+
 void report_review_csv(const struct review_line *line, struct text *out)
 {
+    const char *found = !line->found.known ? "" : line->found.agrees ? "agrees" : "disagrees";
     add_cell(out, line->job);
     text_addf(out, ",%s,%.6f,", verdict_names[line->verdict], (double)line->confidence / PARTS);
     add_cell(out, line->words);
-    text_addf(out, ",%.6f,%.6f,%s,%s,%s,%s,%llu,%llu\r\n", (double)line->none / PARTS,
+    text_addf(out, ",%.6f,%.6f,%s,%s,%s,%s,", (double)line->none / PARTS,
               (double)line->danger / PARTS, sort_name(line->first.family),
-              conductor_kind_names[line->first.conductor],
-              !line->found.known   ? ""
-              : line->found.agrees ? "agrees"
-                                   : "disagrees",
-              line->found.known ? sort_name(line->found.sort.family) : "",
-              (unsigned long long)line->readings, (unsigned long long)line->written_off);
+              conductor_kind_names[line->first.conductor], found,
+              line->found.known ? sort_name(line->found.sort.family) : "");
+    add_disagreement(out, line);
+    text_addf(out, ",%llu,%llu\r\n", (unsigned long long)line->readings,
+              (unsigned long long)line->written_off);
 }

@@ -129,6 +129,8 @@ static enum rf_status run_window(struct run *run, int threads, bool *more, struc
         if (run->window[i].done)
             status = hand_on(run, &run->window[i], error);
     }
+    if (status == RF_OK && run->sink->pause != NULL)
+        run->sink->pause(run->sink->context);
     return status;
 }
 

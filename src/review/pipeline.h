@@ -23,6 +23,8 @@ struct review_sink {
                              struct rf_error *error);
     /* One job or file that could not be reviewed, in its place in that order. */
     void (*refuse)(void *context, const struct rf_error *error);
+    /* All that was read so far has been handed on. NULL: nothing to do then. */
+    void (*pause)(void *context);
 };
 
 /*

@@ -108,7 +108,7 @@ static enum rf_status review_folder(struct rf_review **review, size_t *accepted,
 {
     char *paths[] = {folder};
     struct review_input *input = NULL;
-    const struct review_sink sink = {accepted, render, accept, refuse};
+    const struct review_sink sink = {accepted, render, accept, refuse, NULL};
     *accepted = 0;
     enum rf_status status = rf_review_create(review, error);
     if (status == RF_OK)
