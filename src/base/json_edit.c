@@ -59,6 +59,9 @@ static size_t skip_value(const char *json, size_t at)
 
 static bool key_is(const char *json, struct span key, const char *wanted)
 {
+    size_t length = key.to - key.from - 2;
+    if (memchr(json + key.from, '\\', key.to - key.from) == NULL)
+        return strlen(wanted) == length && memcmp(json + key.from + 1, wanted, length) == 0;
     cJSON *string = cJSON_ParseWithLength(json + key.from, key.to - key.from);
     bool same = cJSON_IsString(string) && strcmp(string->valuestring, wanted) == 0;
     cJSON_Delete(string);

@@ -300,12 +300,14 @@ static enum rf_status edit_found(struct sheet_grid *grid, const struct job_chang
     }
     if (change->how == CHANGE_REMOVE)
         return RF_OK;
-    cJSON *found = cJSON_Parse(change->found);
-    enum rf_status status =
-        cJSON_IsObject(found)
-            ? put_found(grid, found, "found.", error)
-            : fail(error, RF_REFUSED, "%s: found: needs an object such as {\"family\": \"none\"}",
-                   grid->source);
+    cJSON *found = NULL;
+    enum rf_status status = json_parse(change->found, strlen(change->found), "found",
+                                       JSON_ONE_LINE, &found, error);
+    if (status == RF_OK && !cJSON_IsObject(found))
+        status = fail(error, RF_REFUSED,
+                      "%s: found: needs an object such as {\"family\": \"none\"}", grid->source);
+    if (status == RF_OK)
+        status = put_found(grid, found, "found.", error);
     cJSON_Delete(found);
     return status;
 }

@@ -12,9 +12,10 @@ cJSON *sheet_text_value(const char *cell)
 {
     cJSON *value = NULL;
     struct rf_error ignored;
-    if (cell[0] == '"' &&
-        json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored) == RF_OK &&
-        cJSON_IsString(value))
+    enum rf_status status =
+        cell[0] == '"' ? json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored)
+                       : RF_SYNTAX;
+    if (status == RF_MEMORY || cJSON_IsString(value))
         return value;
     cJSON_Delete(value);
     return cJSON_CreateString(cell);
@@ -56,9 +57,9 @@ cJSON *sheet_private_value(const char *cell, char decimal)
     struct rf_error ignored;
     if (sheet_number(cell, decimal, json, sizeof json))
         return cJSON_Parse(json);
-    if (json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored) == RF_OK)
-        return value;
-    return cJSON_CreateString(cell);
+    enum rf_status status =
+        json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored);
+    return status == RF_OK || status == RF_MEMORY ? value : cJSON_CreateString(cell);
 }
 
 void sheet_add_private(const cJSON *value, char decimal, struct text *cell)
