@@ -26,7 +26,8 @@ static const double default_weight = 100;
 
 static volatile sig_atomic_t interrupted;
 
-/* A read that waits on standard input would go on waiting: it finds the end instead. */
+/* What is being written is written on (SA_RESTART). A read that waits on standard input would go on
+ * waiting, too: restarted, it finds the end instead. */
 static void interrupt(int number)
 {
     int saved = errno, nothing = open("/dev/null", O_RDONLY);
@@ -45,7 +46,7 @@ static void catch_interrupt(void)
     struct sigaction action, before;
     memset(&action, 0, sizeof action);
     action.sa_handler = interrupt;
-    action.sa_flags = (int)SA_RESETHAND;
+    action.sa_flags = (int)(SA_RESETHAND | SA_RESTART);
     sigemptyset(&action.sa_mask);
     if (sigaction(SIGINT, NULL, &before) == 0 && before.sa_handler != SIG_IGN)
         sigaction(SIGINT, &action, NULL);
@@ -315,6 +316,10 @@ static enum rf_status learn(const struct invocation *invocation, const struct se
     struct text file = {0};
     if (path == NULL)
         return RF_OK;
+    if (interrupted != 0) {
+        complain("%s: not written: the review was stopped", path);
+        return RF_OK;
+    }
     enum rf_status status = load(invocation, RF_RATES_CONSULTED, &models, error);
     if (status == RF_OK)
         status = rf_review_learn(review, models, settings->weight, &written, error);

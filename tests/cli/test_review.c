@@ -6,6 +6,7 @@
 #include <errno.h>
 #include <fcntl.h>
 #include <signal.h>
+#include <sys/ioctl.h>
 #include <time.h>
 
 #define PROGRAM "\"$RINGFETTLE\" "
@@ -295,6 +296,45 @@ START_TEST(an_interrupt_ends_in_good_order)
 }
 END_TEST
 
+/* With a reader that does not read yet, the program waits in the middle of a line. */
+START_TEST(an_interrupt_cuts_no_line)
+{
+    enum { MUCH = 30000, UNCHANGED = 5 };
+    int ends[2], status, waiting = 0, before = 0, unchanged = 0;
+    ck_assert(system("for i in $(seq 200); do cat small.json; done >jobs.ndjson") == 0);
+    ck_assert(pipe(ends) == 0);
+    pid_t child = fork();
+    ck_assert(child >= 0);
+    if (child == 0) {
+        signal(SIGINT, SIG_DFL);
+        dup2(ends[1], STDOUT_FILENO);
+        close(ends[0]);
+        close(ends[1]);
+        execl(getenv("RINGFETTLE"), "ringfettle", "review", "--json", "jobs.ndjson", (char *)NULL);
+        _exit(127);
+    }
+    close(ends[1]);
+    for (int i = 0; i < TENTHS && unchanged < UNCHANGED; i++) {
+        nanosleep(&(struct timespec){.tv_nsec = 100000000}, NULL);
+        ck_assert(ioctl(ends[0], FIONREAD, &waiting) == 0);
+        unchanged = waiting > MUCH && waiting == before ? unchanged + 1 : 0;
+        before = waiting;
+    }
+    ck_assert_int_eq(unchanged, UNCHANGED); /* the pipe is full */
+    ck_assert_int_eq(kill(child, SIGINT), 0);
+    FILE *pipe_end = fdopen(ends[0], "rb"), *file = fopen("interrupted.out", "wb");
+    ck_assert(pipe_end != NULL && file != NULL);
+    for (int byte; (byte = getc(pipe_end)) != EOF;)
+        putc(byte, file);
+    fclose(pipe_end);
+    ck_assert(fclose(file) == 0);
+    ck_assert_int_eq(waitpid(child, &status, 0), child);
+    ck_assert(WIFSIGNALED(status) && WTERMSIG(status) == SIGINT);
+    expect_run(PROGRAM "review --merge interrupted.out", 0, "SUMMARY, STOPPED BEFORE THE END",
+               NULL);
+}
+END_TEST
+
 int main(void)
 {
     Suite *suite = suite_create("review");
@@ -311,5 +351,6 @@ int main(void)
     tcase_add_test(cases, learns);
     tcase_add_test(cases, table_holds_no_formulas);
     tcase_add_test(cases, an_interrupt_ends_in_good_order);
+    tcase_add_test(cases, an_interrupt_cuts_no_line);
     return run_suite(suite);
 }
