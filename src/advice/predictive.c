@@ -72,7 +72,7 @@ static void list_candidates(struct predictive *p, const struct rf_diagnosis *dia
     }
 }
 
-/* Σ (L⁻¹ J)²: the variance the fit leaves in a mean, Ω². */
+/* Σ (U⁻ᵀ J)²: the variance the fit leaves in a mean, Ω². */
 static double fit_variance(const struct ranked *ranked, const double gradient[], double scratch[])
 {
     size_t d = ranked->n_parameters;

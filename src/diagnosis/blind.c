@@ -82,7 +82,7 @@ static bool look_at_ring(struct sight *s, struct forward *forward)
         for (size_t j = 0; j < s->d; j++)
             row[j] = forward_gradient(forward, m)[j] / s->sigma[i];
         for (size_t j = 0; j < s->d; j++)
-            for (size_t k = 0; k <= j; k++)
+            for (size_t k = j; k < s->d; k++)
                 s->factor[j * s->d + k] += row[j] * row[k];
     }
     return cholesky_factor(s->factor, s->d, s->d);

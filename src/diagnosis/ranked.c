@@ -56,7 +56,8 @@ static bool keep_fit(struct ranked *ranked, const struct fit *fit, const struct 
         return false;
     memcpy(ranked->theta, fit->theta, d * sizeof *fit->theta);
     for (size_t j = 0; j < d; j++)
-        memcpy(ranked->factor + j * d, fit->factor + j * fit->stride, (j + 1) * sizeof(double));
+        memcpy(ranked->factor + j * d + j, fit->factor + j * fit->stride + j,
+               (d - j) * sizeof(double));
     for (size_t i = 0; i < n; i++) {
         size_t m = observations[i].measurement;
         ranked->fitted[i] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;

@@ -105,7 +105,7 @@ static enum rf_status narrow_by_ends(const struct rf_job *job, const struct rf_m
 
 /* --- means and ranges --- */
 
-/* σ of the mean, Ω: |L⁻¹ g| with g the gradient. */
+/* σ of the mean, Ω: |U⁻ᵀ g| with g the gradient. */
 static double mean_sigma(const struct state *state, const double gradient[])
 {
     double square = 0;

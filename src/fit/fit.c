@@ -14,7 +14,7 @@ struct fitter {
     size_t n_observations;
     struct observation *observations;
     double log_open_with_path;
-    size_t stride; /* ≥ parameters of any hypothesis */
+    size_t stride; /* ≥ parameters of any hypothesis; a multiple of four */
 
     double *theta, *trial, *step;
     double *gradient;      /* [parameter] of F */
@@ -71,7 +71,7 @@ struct fitter *fitter_create(const struct wiring *ring)
     struct fitter *f = NEW(struct fitter);
     if (f == NULL)
         return NULL;
-    size_t n = 0, d = (size_t)ring->map.n_common + FAULTS_AT_ONCE;
+    size_t n = 0, d = ((size_t)ring->map.n_common + FAULTS_AT_ONCE + 3) & ~(size_t)3;
     f->ring = ring;
     f->stride = d;
     f->n_observations = ring->job->n_readings;
@@ -189,23 +189,28 @@ static void gather(struct fitter *f, enum curvature curvature)
     }
 }
 
-/* Adds Σ_i grip_i row_i row_iᵀ over four rows to the lower triangle of A (d×d): four at a time,
- * because the triangle is then loaded and stored a quarter as often. */
-static void add_four(double *A, size_t stride, size_t d, const double grip[4],
+/* Adds Σ_i grip_i row_i row_iᵀ over four rows to the upper triangle of A (d×d): four rows at a
+ * time, because the triangle is then loaded and stored a quarter as often, and in blocks of four
+ * columns, because their number is then known to the compiler. Blocks begin left of the diagonal and
+ * end right of d, within the stride (a multiple of four); what they leave there is not read. */
+static void add_four(double *restrict A, size_t stride, size_t d, const double grip[4],
                      const double *const rows[4])
 {
     const double *restrict r0 = rows[0], *restrict r1 = rows[1];
     const double *restrict r2 = rows[2], *restrict r3 = rows[3];
     for (size_t j = 0; j < d; j++) {
-        double *restrict target = A + j * stride;
         double s0 = grip[0] * r0[j], s1 = grip[1] * r1[j];
         double s2 = grip[2] * r2[j], s3 = grip[3] * r3[j];
-        for (size_t k = 0; k <= j; k++)
-            target[k] += (s0 * r0[k] + s1 * r1[k]) + (s2 * r2[k] + s3 * r3[k]);
+        for (size_t block = j & ~(size_t)3; block < d; block += 4) {
+            double *restrict target = A + j * stride + block;
+            for (size_t k = 0; k < 4; k++)
+                target[k] += (s0 * r0[block + k] + s1 * r1[block + k]) +
+                             (s2 * r2[block + k] + s3 * r3[block + k]);
+        }
     }
 }
 
-/* H = I + JᵀWJ (lower triangle) and the gradient of F at θ, from what was evaluated there. */
+/* H = I + JᵀWJ (upper triangle) and the gradient of F at θ, from what was evaluated there. */
 static void normal_equations(struct fitter *f, enum curvature curvature, size_t d)
 {
     size_t n = forward_measurements(f->forward), filled = 0;
@@ -213,7 +218,7 @@ static void normal_equations(struct fitter *f, enum curvature curvature, size_t 
     const double *rows[4] = {NULL};
     gather(f, curvature);
     for (size_t j = 0; j < d; j++) {
-        memset(f->hessian + j * f->stride, 0, (j + 1) * sizeof *f->hessian);
+        memset(f->hessian + j * f->stride, 0, f->stride * sizeof *f->hessian);
         f->hessian[j * f->stride + j] = 1.0;
         f->gradient[j] = f->theta[j];
     }

@@ -6,6 +6,12 @@
 #include <math.h>
 #include <string.h>
 
+/* Columns in a row that one factor scales, and lengths that are in a row, too. */
+struct stretch {
+    size_t column, n;
+    int length, factor;
+};
+
 /* One set-up at the board, with everything that is measured in it. */
 struct board {
     size_t setup;
@@ -20,6 +26,8 @@ struct board {
     int *length;  /* [column] the parameters that scale it; n_parameters: none */
     int *factor;
     double *r; /* [column] */
+    size_t n_stretches;
+    struct stretch *stretches;
 };
 
 struct target {
@@ -64,6 +72,7 @@ static void finish_board(struct board *board)
     free(board->length);
     free(board->factor);
     free(board->r);
+    free(board->stretches);
 }
 
 void forward_destroy(struct forward *f)
@@ -147,8 +156,9 @@ static bool size_board(struct board *board, const struct wiring *ring)
     board->length = NEW_ARRAY(int, edges);
     board->factor = NEW_ARRAY(int, edges);
     board->r = NEW_ARRAY(double, edges);
+    board->stretches = NEW_ARRAY(struct stretch, edges);
     return board->loops != NULL && board->ohms != NULL && board->length != NULL &&
-           board->factor != NULL && board->r != NULL;
+           board->factor != NULL && board->r != NULL && board->stretches != NULL;
 }
 
 struct forward *forward_create(const struct wiring *ring, const struct measurement measurements[],
@@ -159,7 +169,8 @@ struct forward *forward_create(const struct wiring *ring, const struct measureme
         return NULL;
     size_t edges = ring->max_wires + 2;
     f->n = n;
-    f->stride = (size_t)ring->map.n_common + FAULTS_AT_ONCE + 1;
+    /* Room for the parameter that is none, and whole blocks of four for those who read rows so. */
+    f->stride = ((size_t)ring->map.n_common + FAULTS_AT_ONCE + 1 + 3) & ~(size_t)3;
     f->measurements = NEW_ARRAY(struct measurement, n);
     f->targets = NEW_ARRAY(struct target, n);
     f->edges = NEW_ARRAY(struct edge, edges);
@@ -212,6 +223,37 @@ static void scale_columns(struct forward *f, struct board *board)
     }
 }
 
+static void find_stretches(struct board *board)
+{
+    struct stretch *last = NULL;
+    board->n_stretches = 0;
+    for (size_t c = 0; c < board->n_columns; c++) {
+        if (last != NULL && board->factor[c] == last->factor &&
+            board->length[c] == last->length + (int)last->n) {
+            last->n++;
+            continue;
+        }
+        last = &board->stretches[board->n_stretches++];
+        *last = (struct stretch){c, 1, board->length[c], board->factor[c]};
+    }
+}
+
+/* Adds each column's power to the gradients of the two parameters that scale it. */
+static void add_powers(const struct board *board, const double *restrict power,
+                       double *restrict gradient)
+{
+    for (size_t s = 0; s < board->n_stretches; s++) {
+        const struct stretch *stretch = &board->stretches[s];
+        double *restrict lengths = gradient + stretch->length;
+        double sum = 0.0;
+        for (size_t k = 0; k < stretch->n; k++)
+            lengths[k] += power[stretch->column + k];
+        for (size_t k = 0; k < stretch->n; k++)
+            sum += power[stretch->column + k];
+        gradient[stretch->factor] += sum;
+    }
+}
+
 static enum rf_status analyse_board(struct forward *f, struct board *board)
 {
     const struct wiring *w = f->wiring;
@@ -221,8 +263,10 @@ static enum rf_status analyse_board(struct forward *f, struct board *board)
     size_t n_edges = wiring_join(w, board->setup, f->edges, f->wire_of_edge);
     enum rf_status status = loops_analyse(board->loops, (size_t)w->n_nodes, f->edges, n_edges,
                                           board->probes, board->n_probes);
-    if (status == RF_OK)
+    if (status == RF_OK) {
         scale_columns(f, board);
+        find_stretches(board);
+    }
     return status;
 }
 
@@ -315,10 +359,7 @@ static void evaluate_measurement(struct forward *f, size_t i, const double theta
         return;
     size_t probe = target->highest ? highest_probe(board) : target->probe;
     double resistance = loops_read(board->loops, probe, f->power, NULL);
-    for (size_t c = 0; c < board->n_columns; c++) {
-        gradient[board->length[c]] += f->power[c];
-        gradient[board->factor[c]] += f->power[c];
-    }
+    add_powers(board, f->power, gradient);
     read_through_instrument(f, i, resistance, theta);
 }
 

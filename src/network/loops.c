@@ -39,6 +39,8 @@ struct loops {
     double *weighted;  /* n_loops × n_columns: C D */
     double *factor;    /* n_loops × n_loops: Cholesky factor of C D Cᵀ */
     double *loop_flow; /* [loop] */
+    double *flow;      /* [column] */
+    double *power;     /* [column] */
 };
 
 void loops_destroy(struct loops *loops)
@@ -65,6 +67,8 @@ void loops_destroy(struct loops *loops)
     free(loops->weighted);
     free(loops->factor);
     free(loops->loop_flow);
+    free(loops->flow);
+    free(loops->power);
     free(loops);
 }
 
@@ -97,12 +101,14 @@ struct loops *loops_create(size_t nodes, size_t edges, size_t probes, size_t n_l
     l->weighted = NEW_ARRAY(double, n_loops * edges);
     l->factor = NEW_ARRAY(double, n_loops * n_loops);
     l->loop_flow = NEW_ARRAY(double, n_loops);
+    l->flow = NEW_ARRAY(double, edges);
+    l->power = NEW_ARRAY(double, edges);
     if (l->leader == NULL || l->parent == NULL || l->depth == NULL || l->parent_edge == NULL ||
         l->parent_sign == NULL || l->component == NULL || l->first == NULL || l->next == NULL ||
         l->queue == NULL || l->in_tree == NULL || l->wanted == NULL ||
         l->edge_of_column == NULL || l->column_of_edge == NULL || l->loop_rows == NULL ||
         l->probe_rows == NULL || l->path == NULL || l->r == NULL || l->weighted == NULL ||
-        l->factor == NULL || l->loop_flow == NULL) {
+        l->factor == NULL || l->loop_flow == NULL || l->flow == NULL || l->power == NULL) {
         loops_destroy(l);
         return NULL;
     }
@@ -282,6 +288,22 @@ size_t loops_columns(const struct loops *l, const int **edge_of_column)
     return l->n_columns;
 }
 
+/* Σ a_c b_c. Four sums, so that additions need not wait for one another. */
+static double dot(const double *restrict a, const float *restrict b, size_t n)
+{
+    double s0 = 0.0, s1 = 0.0, s2 = 0.0, s3 = 0.0;
+    size_t c = 0;
+    for (; c + 4 <= n; c += 4) {
+        s0 += a[c] * b[c];
+        s1 += a[c + 1] * b[c + 1];
+        s2 += a[c + 2] * b[c + 2];
+        s3 += a[c + 3] * b[c + 3];
+    }
+    for (; c < n; c++)
+        s0 += a[c] * b[c];
+    return (s0 + s1) + (s2 + s3);
+}
+
 enum rf_status loops_factor(struct loops *l, const double r[])
 {
     size_t n = l->n_columns, k = l->n_loops;
@@ -296,13 +318,8 @@ enum rf_status loops_factor(struct loops *l, const double r[])
         double *weighted = l->weighted + i * n;
         for (size_t c = 0; c < n; c++)
             weighted[c] = row[c] * r[c];
-        for (size_t j = 0; j <= i; j++) {
-            const float *other = l->loop_rows + j * n;
-            double sum = 0.0;
-            for (size_t c = 0; c < n; c++)
-                sum += weighted[c] * other[c];
-            l->factor[i * k + j] = sum;
-        }
+        for (size_t j = 0; j <= i; j++)
+            l->factor[j * k + i] = dot(weighted, l->loop_rows + j * n, n);
     }
     return cholesky_factor(l->factor, k, k) ? RF_OK : RF_NUMERICAL;
 }
@@ -311,34 +328,51 @@ enum rf_status loops_factor(struct loops *l, const double r[])
 static void solve_loops(struct loops *l, const float *path)
 {
     size_t n = l->n_columns, k = l->n_loops;
-    for (size_t i = 0; i < k; i++) {
-        const double *weighted = l->weighted + i * n;
-        double sum = 0.0;
-        for (size_t c = 0; c < n; c++)
-            sum += weighted[c] * path[c];
-        l->loop_flow[i] = sum;
-    }
+    for (size_t i = 0; i < k; i++)
+        l->loop_flow[i] = dot(l->weighted + i * n, path, n);
     cholesky_solve(l->factor, k, k, l->loop_flow);
+}
+
+/* i = p − Cᵀ · loop currents, row by row: each pass is over neighbours in memory. */
+static void add_flows(const struct loops *l, const float *restrict path, double *restrict flow)
+{
+    size_t n = l->n_columns;
+    for (size_t c = 0; c < n; c++)
+        flow[c] = path[c];
+    for (size_t k = 0; k < l->n_loops; k++) {
+        const float *restrict row = l->loop_rows + k * n;
+        double loop_flow = l->loop_flow[k];
+        for (size_t c = 0; c < n; c++)
+            flow[c] -= row[c] * loop_flow;
+    }
+}
+
+/* r_c i_c² in every column, and their sum. */
+static double dissipate(const double *restrict r, const double *restrict flow,
+                        double *restrict power, size_t n)
+{
+    double s0 = 0.0, s1 = 0.0;
+    size_t c = 0;
+    for (; c + 2 <= n; c += 2) {
+        power[c] = r[c] * flow[c] * flow[c];
+        power[c + 1] = r[c + 1] * flow[c + 1] * flow[c + 1];
+        s0 += power[c];
+        s1 += power[c + 1];
+    }
+    if (c < n) {
+        power[c] = r[c] * flow[c] * flow[c];
+        s0 += power[c];
+    }
+    return s0 + s1;
 }
 
 double loops_read(struct loops *l, size_t probe, double power[], double current[])
 {
-    size_t n = l->n_columns;
-    const float *path = l->probe_rows + probe * n;
-    double reading = 0.0;
+    const float *path = l->probe_rows + probe * l->n_columns;
     if (!l->path[probe])
         return 0.0;
     solve_loops(l, path);
-    for (size_t c = 0; c < n; c++) {
-        double i = path[c];
-        for (size_t k = 0; k < l->n_loops; k++)
-            i -= l->loop_rows[k * n + c] * l->loop_flow[k];
-        double p = l->r[c] * i * i;
-        reading += p;
-        if (power != NULL)
-            power[c] = p;
-        if (current != NULL)
-            current[c] = i;
-    }
-    return reading;
+    double *flow = current != NULL ? current : l->flow;
+    add_flows(l, path, flow);
+    return dissipate(l->r, flow, power != NULL ? power : l->power, l->n_columns);
 }

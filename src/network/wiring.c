@@ -87,6 +87,8 @@ static void map_parameters(struct wiring *wiring)
     map->n_common = wiring->n_parameters;
 }
 
+/* Pieces lie conductor by conductor, so that neighbours in memory share a factor and their lengths
+ * are neighbours too. */
 static enum rf_status lay_run(struct wiring *wiring, size_t run, struct rf_error *error)
 {
     const struct rf_job *job = wiring->job;
@@ -97,7 +99,8 @@ static enum rf_status lay_run(struct wiring *wiring, size_t run, struct rf_error
         if (isnan(per_m))
             return refuse_size(wiring, run_far_end(run), c == CPC ? "cpc_mm2" : "live_mm2",
                                size_of(wiring, far->live_mm2, far->cpc_mm2, c), error);
-        wiring->wires[wiring->n_wires++] = (struct wire){
+        wiring->n_wires++;
+        wiring->wires[(size_t)c * n_runs(job) + run] = (struct wire){
             .a = terminal(run_near_end(job, run), c),
             .b = terminal(run_far_end(run), c),
             .ohms = metres * per_m,

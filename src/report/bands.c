@@ -9,7 +9,7 @@
 #include <math.h>
 #include <string.h>
 
-/* Σ (L⁻¹ J)², Ω². `scratch` holds n_parameters. */
+/* Σ (U⁻ᵀ J)², Ω². `scratch` holds n_parameters. */
 static double fit_variance(const struct ranked *ranked, const double gradient[], double scratch[])
 {
     size_t d = ranked->n_parameters;

@@ -23,8 +23,8 @@ static void fill(uint64_t *seed, size_t n, double *A, gsl_matrix *G)
             for (size_t k = 0; k < n; k++)
                 sum += B[i][k] * B[j][k];
             gsl_matrix_set(G, i, j, sum);
-            /* The upper triangle must not be read. */
-            A[i * STRIDE + j] = j <= i ? sum : NAN;
+            /* The lower triangle must not be read. */
+            A[i * STRIDE + j] = j >= i ? sum : NAN;
         }
 }
 
@@ -48,7 +48,7 @@ START_TEST(agrees_with_gsl)
         for (size_t i = 0; i < n; i++) {
             log_det += 2.0 * log(gsl_matrix_get(G, i, i));
             for (size_t j = 0; j < i; j++)
-                ck_assert_double_eq_tol(A[i * STRIDE + j], gsl_matrix_get(G, i, j), 1e-11);
+                ck_assert_double_eq_tol(A[j * STRIDE + i], gsl_matrix_get(G, i, j), 1e-11);
             ck_assert_double_eq_tol(1.0 / A[i * STRIDE + i], gsl_matrix_get(G, i, i), 1e-11);
         }
         ck_assert_double_eq_tol(cholesky_log_det(A, n, STRIDE), log_det, 1e-10);
