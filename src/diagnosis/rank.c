@@ -29,10 +29,10 @@ static int by_weight(const void *a, const void *b)
 }
 
 /*
- * Screening. A job's hypotheses are fitted a batch at a time: first all with normal noise, then,
- * in the order of how they stand after that, with the mixture, which gives one up as soon as it is
- * as good as certain to stay `out_of_reach` below the best so far. What is given up weighs nothing:
- * all n of them together would have had less than n · exp(−out_of_reach) of the confidence.
+ * Screening. After the first stage a hypothesis is dropped if its evidence is as good as certain to
+ * stay `out_of_reach` below the best so far; fitted with the mixture at once if it may be better than
+ * that; and put off if neither, until the batch has shown how good the best is. What is dropped weighs
+ * nothing: all n of them together would have had less than n · exp(−out_of_reach) of the confidence.
  */
 enum { BATCH = 1024 };
 
@@ -48,10 +48,13 @@ struct ranking {
     struct wiring wiring; /* of the hypothesis at hand */
     bool screen;
     double best;          /* the largest log weight so far */
-    double *theta;        /* BATCH × stride: where the first stage ended */
+    double *theta;        /* BATCH × stride: where the first stage ended, of those put off */
     double *common;       /* stride: where it ended without a fault, from where the others start */
     size_t stride;
-    struct ordered *order; /* [BATCH] */
+    struct ordered *order; /* [BATCH] those put off, as they stand */
+    double *most;          /* [BATCH] what their evidence can hardly exceed */
+    size_t *put_off;       /* [BATCH] which candidates they are */
+    size_t n_put_off;
 };
 
 static enum rf_status report_failure(const struct ranking *r, const struct candidate *candidate,
@@ -77,51 +80,83 @@ static double log_share(const struct candidate *candidate)
     return candidate->log_prior + candidate->log_looks;
 }
 
-/* First stage for a batch; leaves where each ended in theta, and how it stands in order. */
-static enum rf_status fit_batch_normal(struct ranking *r, size_t first, size_t n,
-                                       struct rf_error *error)
+static double hopeless_below(const struct ranking *r, const struct candidate *candidate)
 {
-    for (size_t i = 0; i < n; i++) {
-        const struct candidate *candidate = &r->candidates->list[first + i];
-        struct fit fit = {0};
-        r->order[i] = (struct ordered){-INFINITY, i};
-        if (r->screen && log_share(candidate) == -INFINITY)
-            continue;
-        if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, r->common, &fit) != RF_OK)
-            return report_failure(r, candidate, error);
-        if (candidate->hypothesis.n_faults == 0)
-            memcpy(r->common, fit.theta, fit.n_parameters * sizeof *fit.theta);
-        memcpy(r->theta + i * r->stride, fit.theta, fit.n_parameters * sizeof *fit.theta);
-        r->order[i].log_weight = log_share(candidate) + fitter_log_posterior(r->fitter);
-    }
-    return RF_OK;
+    if (!r->screen)
+        return -INFINITY;
+    return r->best - out_of_reach(r->candidates->n) - log_share(candidate);
 }
 
-static enum rf_status fit_batch_mixture(struct ranking *r, size_t first, size_t n,
-                                        struct rf_error *error)
+/* The second stage, from where the fitter is. */
+static enum rf_status fit_mixture(struct ranking *r, struct candidate *candidate, struct fit *fit)
 {
-    double reach = out_of_reach(r->candidates->n);
-    qsort(r->order, n, sizeof *r->order, by_weight);
-    for (size_t i = 0; i < n; i++) {
-        size_t index = r->order[i].index;
-        struct candidate *candidate = &r->candidates->list[first + index];
-        struct fit fit = {0};
+    enum rf_status status = fitter_fit_mixture(r->fitter, hopeless_below(r, candidate), fit);
+    if (status == RF_OK && !fit->abandoned) {
+        candidate->log_evidence = fit->log_evidence;
+        r->best = fmax(r->best, log_weight(candidate));
+    }
+    return status;
+}
+
+static void put_off(struct ranking *r, const struct fit *fit, size_t index, double most)
+{
+    size_t k = r->n_put_off++;
+    memcpy(r->theta + k * r->stride, fit->theta, fit->n_parameters * sizeof *fit->theta);
+    r->most[k] = most;
+    r->order[k] = (struct ordered){log_share(&r->candidates->list[index]) + most, k};
+    r->put_off[k] = index;
+}
+
+static enum rf_status fit_or_put_off(struct ranking *r, size_t index)
+{
+    struct candidate *candidate = &r->candidates->list[index];
+    struct fit fit = {0};
+    double most = 0.0;
+    if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, r->common, &fit) != RF_OK)
+        return RF_NUMERICAL;
+    if (candidate->hypothesis.n_faults == 0)
+        memcpy(r->common, fit.theta, fit.n_parameters * sizeof *fit.theta);
+    double hopeless = hopeless_below(r, candidate);
+    if (hopeless > -INFINITY) {
+        if (fitter_prospect(r->fitter, &most) != RF_OK)
+            return RF_NUMERICAL;
+        if (most < hopeless)
+            return RF_OK;
+        if (most + log_share(candidate) < r->best) {
+            put_off(r, &fit, index, most);
+            return RF_OK;
+        }
+    }
+    return fit_mixture(r, candidate, &fit);
+}
+
+static enum rf_status fit_put_off(struct ranking *r, size_t k)
+{
+    struct candidate *candidate = &r->candidates->list[r->put_off[k]];
+    struct fit fit = {0};
+    if (r->most[k] < hopeless_below(r, candidate))
+        return RF_OK;
+    if (analyse(r, candidate) != RF_OK ||
+        fitter_resume(r->fitter, r->theta + k * r->stride, &fit) != RF_OK)
+        return RF_NUMERICAL;
+    return fit_mixture(r, candidate, &fit);
+}
+
+static enum rf_status fit_batch(struct ranking *r, size_t first, size_t n, struct rf_error *error)
+{
+    r->n_put_off = 0;
+    for (size_t i = first; i < first + n; i++) {
+        struct candidate *candidate = &r->candidates->list[i];
         candidate->log_evidence = -INFINITY;
         if (r->screen && log_share(candidate) == -INFINITY)
             continue;
-        double hopeless = r->screen ? r->best - reach - log_share(candidate) : -INFINITY;
-        enum rf_status status = analyse(r, candidate);
-        if (status == RF_OK) {
-            fitter_resume(r->fitter, r->theta + index * r->stride, &fit);
-            status = fitter_fit_mixture(r->fitter, hopeless, &fit);
-        }
-        if (status != RF_OK)
+        if (fit_or_put_off(r, i) != RF_OK)
             return report_failure(r, candidate, error);
-        if (fit.abandoned)
-            continue;
-        candidate->log_evidence = fit.log_evidence;
-        r->best = fmax(r->best, log_weight(candidate));
     }
+    qsort(r->order, r->n_put_off, sizeof *r->order, by_weight);
+    for (size_t i = 0; i < r->n_put_off; i++)
+        if (fit_put_off(r, r->order[i].index) != RF_OK)
+            return report_failure(r, &r->candidates->list[r->put_off[r->order[i].index]], error);
     return RF_OK;
 }
 
@@ -180,9 +215,7 @@ static enum rf_status fit_all(struct ranking *r, struct rf_error *error)
     enum rf_status status = RF_OK;
     for (size_t first = 0; first < r->candidates->n && status == RF_OK; first += BATCH) {
         size_t left = r->candidates->n - first, n = left < BATCH ? left : BATCH;
-        status = fit_batch_normal(r, first, n, error);
-        if (status == RF_OK)
-            status = fit_batch_mixture(r, first, n, error);
+        status = fit_batch(r, first, n, error);
     }
     return status;
 }
@@ -202,7 +235,10 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
     ranking.theta = NEW_ARRAY(double, batch * ranking.stride);
     ranking.common = NEW_ARRAY(double, ranking.stride);
     ranking.order = NEW_ARRAY(struct ordered, batch);
-    enum rf_status status = ranking.theta == NULL || ranking.common == NULL || ranking.order == NULL
+    ranking.most = NEW_ARRAY(double, batch);
+    ranking.put_off = NEW_ARRAY(size_t, batch);
+    enum rf_status status = ranking.theta == NULL || ranking.common == NULL || ranking.order == NULL ||
+                                    ranking.most == NULL || ranking.put_off == NULL
                                 ? fail_memory(error)
                                 : wiring_init(&ranking.wiring, ring->job, ring->models, error);
     if (status == RF_OK)
@@ -211,6 +247,8 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
     free(ranking.theta);
     free(ranking.common);
     free(ranking.order);
+    free(ranking.most);
+    free(ranking.put_off);
     if (status != RF_OK)
         return status;
     normalise(candidates);

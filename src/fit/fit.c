@@ -17,6 +17,7 @@ struct fitter {
     size_t stride; /* ≥ parameters of any hypothesis; a multiple of four */
 
     double *theta, *trial, *step;
+    double step_promise;   /* of `step`, if it is one from theta; else negative */
     double *gradient;      /* [parameter] of F */
     double *hessian;       /* stride × stride, then its factor */
     double *weights, *z;   /* [observation] */
@@ -276,8 +277,9 @@ static void shorten(double *step, size_t d)
             step[j] *= longest_step / longest;
 }
 
-/* Halves the step until F falls; leaves θ and everything evaluated there. False: it never does. */
-static bool descend(struct fitter *f, enum noise noise, size_t d, double *value)
+/* Halves the step until F falls; leaves θ and everything evaluated there. Answers the share of the
+ * step taken; 0: F never falls. */
+static double descend(struct fitter *f, enum noise noise, size_t d, double *value)
 {
     double scale = 1.0;
     for (int halving = 0; halving <= MOST_HALVINGS; halving++, scale *= 0.5) {
@@ -289,10 +291,10 @@ static bool descend(struct fitter *f, enum noise noise, size_t d, double *value)
             f->theta = f->trial;
             f->trial = swap;
             *value = trial_value;
-            return true;
+            return scale;
         }
     }
-    return false;
+    return 0.0;
 }
 
 /* The Newton step at θ, shortened; returns the decrease of F it promises, ½ gᵀH⁻¹g. Negative: the
@@ -313,8 +315,8 @@ static double newton_step(struct fitter *f, enum curvature curvature, size_t d)
     return fmax(promise, 0.0);
 }
 
-/* When to stop: at a promise below `promise`, or below `share` of what F is; or, with F as good as
- * certain to stay above `hopeless`, at once. */
+/* When to stop: at a promise below `promise`, or below `share` of what F is; or, with log Z as good
+ * as certain to stay below `hopeless`, at once. */
 struct patience {
     double promise, share, hopeless;
 };
@@ -325,32 +327,63 @@ static const double promise_kept = 10.0, promise_slack = 1.0;
 /* A decrease of F, promised by the step before. */
 static const double near_optimum = 0.1;
 
+/* A whole step that kept its promise to a tenth leaves less than a tenth of it to be had. */
+static bool kept_its_promise(double scale, double promise, double decrease)
+{
+    return scale == 1.0 && fabs(decrease - promise) < 0.1 * promise;
+}
+
+/* F where the forward model was evaluated last, which must be f->theta. */
+static double objective_here(struct fitter *f, enum noise noise, size_t d)
+{
+    return misfit_of_readings(f, noise) + half_square(f->theta, d);
+}
+
+/* What log Z can hardly exceed, F being `value` and the next step promising so much less; the factor
+ * is of that step. The determinant changes little from here to the optimum, so most of it counts. */
+static double hardly_exceeded(const struct fitter *f, size_t d, double value, double promise)
+{
+    double log_det = cholesky_log_det(f->hessian, d, f->stride);
+    return promise_kept * promise + promise_slack - value - 0.5 * fmax(0.0, 0.8 * log_det - 4.0);
+}
+
 /*
- * Minimises F from f->theta. On return means, gradients and weights are those at f->theta.
- * False: the arithmetic failed.
+ * Minimises F from f->theta, where the forward model has been evaluated. On return means, gradients
+ * and weights are those at f->theta. False: the arithmetic failed.
  */
 static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patience patience,
                      struct fit *fit)
 {
-    double value = objective(f, noise, f->theta, d), promise = INFINITY;
+    double value = objective_here(f, noise, d), promise = INFINITY;
     fit->converged = false;
     for (int iteration = 0; isfinite(value); iteration++) {
         /* Longer steps only once near an optimum: further off they can jump past it, into one that
          * writes the tell-tale readings off. */
         bool near = noise == NOISE_MIXTURE && promise < near_optimum;
-        promise = newton_step(f, near ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
+        promise = f->step_promise;
+        if (promise < 0.0)
+            promise = newton_step(f, near ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
+        f->step_promise = -1.0;
         if (promise < 0.0)
             return false;
         fit->objective = value;
-        fit->abandoned = value - promise_kept * promise - promise_slack > patience.hopeless;
-        fit->converged = promise < fmax(patience.promise, patience.share * value);
+        fit->abandoned = patience.hopeless > -INFINITY &&
+                         hardly_exceeded(f, d, value, promise) < patience.hopeless;
+        double enough = fmax(patience.promise, patience.share * value), before = value;
+        fit->converged = promise < enough;
         if (fit->abandoned || fit->converged || iteration == MOST_ITERATIONS)
             return true;
         fit->iterations++;
-        if (!descend(f, noise, d, &value)) {
+        double scale = descend(f, noise, d, &value);
+        if (scale == 0.0) {
             /* At the floor of the arithmetic: put back what belongs to θ. */
             fit->converged = true;
             return isfinite(objective(f, noise, f->theta, d));
+        }
+        if (promise < 10.0 * enough && kept_its_promise(scale, promise, before - value)) {
+            fit->objective = value;
+            fit->converged = true;
+            return true;
         }
     }
     return false;
@@ -370,8 +403,10 @@ enum rf_status fitter_fit_normal(struct fitter *f, const double start[], struct 
         memcpy(f->theta, start, d * sizeof *start);
     else
         memset(f->theta, 0, d * sizeof *f->theta);
-    struct patience patience = {.promise = 1e-3, .share = 0.001, .hopeless = INFINITY};
-    bool ok = minimise(f, NOISE_NORMAL, d, patience, fit);
+    struct patience patience = {.promise = 1e-3, .share = 0.001, .hopeless = -INFINITY};
+    f->step_promise = -1.0;
+    bool ok = forward_evaluate(f->forward, f->theta) == RF_OK &&
+              minimise(f, NOISE_NORMAL, d, patience, fit);
     fit->theta = f->theta;
     return ok ? RF_OK : RF_NUMERICAL;
 }
@@ -380,11 +415,10 @@ enum rf_status fitter_fit_mixture(struct fitter *f, double hopeless, struct fit 
 {
     size_t d = (size_t)f->wiring->n_parameters, iterations = fit->iterations;
     *fit = (struct fit){.n_parameters = d, .stride = f->stride, .iterations = iterations};
-    /* log det ≥ 0, so log Z ≤ −F. */
-    struct patience patience = {.promise = 1e-5, .hopeless = -hopeless};
+    struct patience patience = {.promise = 1e-5, .hopeless = hopeless};
     if (!minimise(f, NOISE_MIXTURE, d, patience, fit))
         return RF_NUMERICAL;
-    double value = misfit_of_readings(f, NOISE_MIXTURE) + half_square(f->theta, d);
+    double value = objective_here(f, NOISE_MIXTURE, d);
     normal_equations(f, CURVATURE_INLIERS, d);
     if (!cholesky_factor(f->hessian, d, f->stride))
         return RF_NUMERICAL;
@@ -399,17 +433,24 @@ enum rf_status fitter_fit_mixture(struct fitter *f, double hopeless, struct fit 
     return isfinite(fit->log_evidence) ? RF_OK : RF_NUMERICAL;
 }
 
-double fitter_log_posterior(struct fitter *f)
+enum rf_status fitter_prospect(struct fitter *f, double *most)
 {
-    return -misfit_of_readings(f, NOISE_MIXTURE) -
-           half_square(f->theta, (size_t)f->wiring->n_parameters);
+    size_t d = (size_t)f->wiring->n_parameters;
+    double value = objective_here(f, NOISE_MIXTURE, d);
+    f->step_promise = isfinite(value) ? newton_step(f, CURVATURE_INLIERS, d) : -1.0;
+    if (f->step_promise < 0.0)
+        return RF_NUMERICAL;
+    *most = hardly_exceeded(f, d, value, f->step_promise);
+    return RF_OK;
 }
 
-void fitter_resume(struct fitter *f, const double theta[], struct fit *fit)
+enum rf_status fitter_resume(struct fitter *f, const double theta[], struct fit *fit)
 {
     size_t d = (size_t)f->wiring->n_parameters;
     *fit = (struct fit){.n_parameters = d, .stride = f->stride};
     memcpy(f->theta, theta, d * sizeof *theta);
+    f->step_promise = -1.0;
+    return forward_evaluate(f->forward, f->theta);
 }
 
 enum rf_status fitter_fit(struct fitter *f, const struct wiring *wiring, const double start[],

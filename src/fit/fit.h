@@ -65,9 +65,11 @@ enum rf_status fitter_fit(struct fitter *fitter, const struct wiring *wiring, co
 enum rf_status fitter_analyse(struct fitter *fitter, const struct wiring *wiring);
 enum rf_status fitter_fit_normal(struct fitter *fitter, const double start[], struct fit *fit);
 enum rf_status fitter_fit_mixture(struct fitter *fitter, double hopeless, struct fit *fit);
-/* log-likelihood − ½|θ|² of the mixture where the last fit of either stage ended. */
-double fitter_log_posterior(struct fitter *fitter);
-void fitter_resume(struct fitter *fitter, const double theta[], struct fit *fit);
+enum rf_status fitter_resume(struct fitter *fitter, const double theta[], struct fit *fit);
+
+/* What log Z can hardly exceed, from how the mixture stands where the first stage ended.
+ * RF_NUMERICAL. */
+enum rf_status fitter_prospect(struct fitter *fitter, double *most);
 
 /* Standard deviation of θ_j under the fit, from its factor; `scratch` holds n_parameters. */
 double fit_parameter_sigma(const struct fit *fit, size_t j, double scratch[]);
