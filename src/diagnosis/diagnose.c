@@ -11,22 +11,30 @@ static void finish_ranked(struct ranked *ranked)
     free(ranked->fitted);
 }
 
+static void forget_ranked(struct rf_diagnosis *diagnosis)
+{
+    for (size_t i = 0; i < diagnosis->n_ranked; i++)
+        finish_ranked(&diagnosis->ranked[i]);
+    free(diagnosis->ranked);
+    free(diagnosis->suspects);
+    diagnosis->ranked = NULL;
+    diagnosis->suspects = NULL;
+    diagnosis->n_ranked = diagnosis->n_suspects = 0;
+}
+
 void rf_diagnosis_destroy(struct rf_diagnosis *diagnosis)
 {
     if (diagnosis == NULL)
         return;
-    for (size_t i = 0; i < diagnosis->n_ranked; i++)
-        finish_ranked(&diagnosis->ranked[i]);
+    forget_ranked(diagnosis);
     for (size_t i = 0; i < diagnosis->n_findings; i++) {
         free(diagnosis->findings[i].words);
         free(diagnosis->findings[i].members);
     }
     for (size_t i = 0; i < diagnosis->n_blind; i++)
         free(diagnosis->blind[i].words);
-    free(diagnosis->ranked);
     free(diagnosis->findings);
     free(diagnosis->places);
-    free(diagnosis->suspects);
     free(diagnosis->blind);
     free(diagnosis->sound);
     wiring_finish(&diagnosis->ring);
@@ -47,18 +55,37 @@ static void compare_with_found(struct rf_diagnosis *diagnosis, const struct cand
     }
 }
 
-static enum rf_status diagnose_with(struct rf_diagnosis *diagnosis, struct candidates *candidates,
-                                    struct fitter *fitter, struct rf_error *error)
+static enum rf_status rank_and_test(struct rf_diagnosis *diagnosis, struct candidates *candidates,
+                                    struct fitter *fitter, bool screen, struct rf_error *error)
 {
+    candidates_finish(candidates);
+    forget_ranked(diagnosis);
     enum rf_status status =
         candidates_enumerate(candidates, diagnosis->job, diagnosis->models, error);
     diagnosis->n_hypotheses = candidates->n;
     if (status == RF_OK)
-        status = candidates_rank(candidates, fitter, &diagnosis->ring, diagnosis->screened, error);
+        status = candidates_rank(candidates, fitter, &diagnosis->ring, screen, error);
     if (status == RF_OK)
         status = keep_ranked(diagnosis, candidates, fitter, error);
     if (status == RF_OK)
         status = test_misfit(diagnosis, fitter, error);
+    return status;
+}
+
+/*
+ * Screening judges a fit by its first steps, which can be trusted where something explains the
+ * readings. Where nothing seems to, a fit may yet turn a corner late, with many readings to write
+ * off; so below this p-value of the misfit test, every fit is followed to its end.
+ */
+static const double screening_trusted = 0.2;
+
+static enum rf_status diagnose_with(struct rf_diagnosis *diagnosis, struct candidates *candidates,
+                                    struct fitter *fitter, struct rf_error *error)
+{
+    enum rf_status status =
+        rank_and_test(diagnosis, candidates, fitter, diagnosis->screened, error);
+    if (status == RF_OK && diagnosis->screened && diagnosis->misfit.p < screening_trusted)
+        status = rank_and_test(diagnosis, candidates, fitter, false, error);
     if (status == RF_OK)
         status = add_up_places(diagnosis, candidates, error);
     if (status == RF_OK)
