@@ -2,6 +2,7 @@
 #include "advice/steps.h"
 #include "advice/words.h"
 
+#include "base/cholesky.h"
 #include "base/error.h"
 #include "base/memory.h"
 
@@ -10,8 +11,10 @@
 
 /*
  * Which reading would lift a blind spot: put some members of the kind, at their median, into the
- * ring without other fault, and see at which readings not yet taken they would show. The reading
- * that shows most of them a minute is it.
+ * ring without other fault, and see at which readings not yet taken they would show. What the ring
+ * would be taken for meanwhile counts: readings taken move by δ, so its parameters would be fitted
+ * Δθ = (I + JᵀJ)⁻¹ Jᵀδ away, and only what a new reading moves beyond that tells. The reading that
+ * shows most members a minute is it.
  */
 
 enum { MEMBERS_TRIED = 4 };
@@ -22,11 +25,15 @@ static const double shows = 3.0;
 struct seeker {
     const struct rf_diagnosis *diagnosis;
     const struct predictive *predictive;
-    struct forward *forward;
+    struct forward *forward; /* measures what has been read, then the candidates */
+    size_t n_read, n, d;     /* readings, candidates, parameters of the ring */
     struct wiring wiring;
-    double *theta; /* the ring's, of the best fit; faults at their median */
-    double *sound; /* [candidate] Ω without fault; NAN: over range */
-    double *shown; /* [candidate] members that would show there */
+    double *theta;    /* the ring's, of the best fit; faults at their median */
+    double *sound;    /* [measurement] Ω without fault; NAN: over range */
+    double *jacobian; /* (n_read + n) × d, Ω per whitened unit, without fault */
+    double *factor;   /* d × d, of I + JᵀJ over the readings */
+    double *shift;    /* [parameter] Δθ */
+    double *shown;    /* [candidate] members that would show there */
 };
 
 static void finish_seeker(struct seeker *s)
@@ -35,6 +42,9 @@ static void finish_seeker(struct seeker *s)
     wiring_finish(&s->wiring);
     free(s->theta);
     free(s->sound);
+    free(s->jacobian);
+    free(s->factor);
+    free(s->shift);
     free(s->shown);
 }
 
@@ -44,28 +54,105 @@ static enum rf_status evaluate(struct seeker *s)
     return status == RF_OK ? forward_evaluate(s->forward, s->theta) : status;
 }
 
-static double mean_or_nan(const struct seeker *s, size_t candidate)
+static double mean_or_nan(const struct seeker *s, size_t measurement)
 {
-    return forward_reachable(s->forward, candidate) ? forward_mean(s->forward, candidate) : NAN;
+    return forward_reachable(s->forward, measurement) ? forward_mean(s->forward, measurement) : NAN;
+}
+
+static double noise_at(const struct seeker *s, double ohms)
+{
+    return instrument_sigma(&s->diagnosis->models->instrument, ohms > 0.0 ? ohms : 0.0);
+}
+
+/* Means and gradients without fault, and the factor of what the readings say of the ring. */
+static bool look_at_ring(struct seeker *s)
+{
+    if (evaluate(s) != RF_OK)
+        return false;
+    for (size_t i = 0; i < s->n_read + s->n; i++) {
+        s->sound[i] = mean_or_nan(s, i);
+        memcpy(s->jacobian + i * s->d, forward_gradient(s->forward, i), s->d * sizeof(double));
+    }
+    for (size_t j = 0; j < s->d; j++)
+        s->factor[j * s->d + j] = 1.0;
+    for (size_t i = 0; i < s->n_read; i++) {
+        const double *row = s->jacobian + i * s->d;
+        if (isnan(s->sound[i]))
+            continue;
+        double sigma = noise_at(s, s->sound[i]), weight = 1.0 / (sigma * sigma);
+        for (size_t j = 0; j < s->d; j++)
+            for (size_t k = j; k < s->d; k++)
+                s->factor[j * s->d + k] += weight * row[j] * row[k];
+    }
+    return cholesky_factor(s->factor, s->d, s->d);
+}
+
+static struct forward *measure_all(const struct seeker *s)
+{
+    const struct rf_job *job = s->diagnosis->job;
+    struct measurement *all = NEW_ARRAY(struct measurement, s->n_read + s->n);
+    if (all == NULL)
+        return NULL;
+    for (size_t i = 0; i < s->n_read; i++)
+        all[i] = (struct measurement){job->readings[i].setup, job->readings[i].spot,
+                                      job->readings[i].place};
+    memcpy(all + s->n_read, s->predictive->candidates, s->n * sizeof *all);
+    struct forward *forward = forward_create(&s->diagnosis->ring, all, s->n_read + s->n);
+    free(all);
+    return forward;
 }
 
 static enum rf_status init_seeker(struct seeker *s, struct rf_error *error)
 {
     const struct rf_diagnosis *d = s->diagnosis;
-    size_t common = (size_t)d->ring.map.n_common, n = s->predictive->n;
-    s->theta = NEW_ARRAY(double, common + FAULTS_AT_ONCE);
-    s->sound = NEW_ARRAY(double, n);
-    s->shown = NEW_ARRAY(double, n);
-    s->forward = forward_create(&d->ring, s->predictive->candidates, n);
-    if (s->theta == NULL || s->sound == NULL || s->shown == NULL || s->forward == NULL)
+    s->n_read = d->job->n_readings;
+    s->n = s->predictive->n;
+    s->d = (size_t)d->ring.map.n_common;
+    s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
+    s->sound = NEW_ARRAY(double, s->n_read + s->n);
+    s->jacobian = NEW_ARRAY(double, (s->n_read + s->n) * s->d);
+    s->factor = NEW_ARRAY(double, s->d * s->d);
+    s->shift = NEW_ARRAY(double, s->d);
+    s->shown = NEW_ARRAY(double, s->n);
+    s->forward = measure_all(s);
+    if (s->theta == NULL || s->sound == NULL || s->jacobian == NULL || s->factor == NULL ||
+        s->shift == NULL || s->shown == NULL || s->forward == NULL)
         return fail_memory(error);
-    memcpy(s->theta, d->ranked[0].theta, common * sizeof *s->theta);
+    memcpy(s->theta, d->ranked[0].theta, s->d * sizeof *s->theta);
     enum rf_status status = wiring_init(&s->wiring, d->job, d->models, error);
-    if (status == RF_OK && (status = evaluate(s)) != RF_OK)
-        fail(error, status, "%s: the recorded ring's readings cannot be computed", d->job->source);
-    for (size_t c = 0; c < n && status == RF_OK; c++)
-        s->sound[c] = mean_or_nan(s, c);
+    if (status == RF_OK && !look_at_ring(s))
+        status = fail(error, RF_NUMERICAL, "%s: the recorded ring's readings cannot be computed",
+                      d->job->source);
     return status;
+}
+
+/* Δθ: what the ring would be taken for, with the fault in and not thought of. */
+static void shift_ring(struct seeker *s)
+{
+    memset(s->shift, 0, s->d * sizeof *s->shift);
+    for (size_t i = 0; i < s->n_read; i++) {
+        double mean = mean_or_nan(s, i), sigma = noise_at(s, s->sound[i]);
+        if (isnan(mean) || isnan(s->sound[i]))
+            continue;
+        double pull = (mean - s->sound[i]) / (sigma * sigma);
+        for (size_t j = 0; j < s->d && pull != 0.0; j++)
+            s->shift[j] += pull * s->jacobian[i * s->d + j];
+    }
+    cholesky_solve(s->factor, s->d, s->d, s->shift);
+}
+
+/* Whether the member would show at a candidate. */
+static bool shows_at(const struct seeker *s, size_t candidate)
+{
+    size_t i = s->n_read + candidate;
+    double mean = mean_or_nan(s, i), expected = s->sound[i];
+    if (isnan(mean) || isnan(expected))
+        return isnan(mean) != isnan(expected);
+    for (size_t j = 0; j < s->d; j++)
+        expected += s->jacobian[i * s->d + j] * s->shift[j];
+    /* The likeliest hypothesis' uncertainty stands for the ring's. */
+    double sigma = fmax(s->predictive->sigma[candidate], noise_at(s, s->sound[i]));
+    return fabs(mean - expected) > shows * sigma;
 }
 
 static enum rf_status try_member(struct seeker *s, const struct fault *fault, struct rf_error *error)
@@ -77,14 +164,9 @@ static enum rf_status try_member(struct seeker *s, const struct fault *fault, st
     if (status != RF_OK)
         return fail(error, status, "%s: readings to come cannot be computed",
                     s->diagnosis->job->source);
-    const struct instrument_model *in = &s->diagnosis->models->instrument;
-    for (size_t c = 0; c < s->predictive->n; c++) {
-        double mean = mean_or_nan(s, c), sound = s->sound[c];
-        /* The likeliest hypothesis' uncertainty stands for the ring's. */
-        double sigma = fmax(s->predictive->sigma[c], instrument_sigma(in, fmax(sound, 0.0)));
-        if (isnan(mean) != isnan(sound) || fabs(mean - sound) > shows * sigma)
-            s->shown[c] += 1.0;
-    }
+    shift_ring(s);
+    for (size_t c = 0; c < s->n; c++)
+        s->shown[c] += shows_at(s, c);
     return RF_OK;
 }
 
@@ -160,17 +242,17 @@ static enum rf_status seek_one(struct rf_advice *advice, struct seeker *s, size_
     struct members members = {.example = &s->diagnosis->blind[blind].example};
     enum rf_status status = RF_OK;
     sample_members(s->diagnosis, &members);
-    memset(s->shown, 0, s->predictive->n * sizeof *s->shown);
+    memset(s->shown, 0, s->n * sizeof *s->shown);
     for (size_t i = 0; i < members.n_tried && status == RF_OK; i++)
         status = try_member(s, &members.tried[i], error);
-    size_t best = s->predictive->n;
+    size_t best = s->n;
     double most = 0.0;
-    for (size_t c = 0; c < s->predictive->n && status == RF_OK; c++)
+    for (size_t c = 0; c < s->n && status == RF_OK; c++)
         if (s->shown[c] / minutes_of(s, c) > most) {
             most = s->shown[c] / minutes_of(s, c);
             best = c;
         }
-    if (status != RF_OK || best == s->predictive->n)
+    if (status != RF_OK || best == s->n)
         return status;
     struct lift *lift = &advice->lifts[advice->n_lifts++];
     lift->blind = blind;

@@ -222,6 +222,12 @@ static double cost_of(const struct looking *l, size_t location)
     return at->minutes + (l->reached[at->reach] ? 0.0 : l->reach_minutes[at->reach]);
 }
 
+/* Ties go by place, as the diagnosis lists them. */
+static bool stands_before(const struct look *one, const struct look *other)
+{
+    return one->where != other->where ? one->where < other->where : one->index < other->index;
+}
+
 /* By chance per minute; n_locations where nothing would show more than rounding. */
 static size_t best_location(const struct looking *l, double rounding)
 {
@@ -233,7 +239,8 @@ static size_t best_location(const struct looking *l, double rounding)
         double cost = cost_of(l, i);
         /* A look that costs nothing comes first. */
         double rate = l->chance[i] / (cost > 1e-9 ? cost : 1e-9);
-        if (rate > most) {
+        bool tie = best < l->n_locations && fabs(rate - most) <= 1e-9 * most;
+        if (tie ? stands_before(&l->locations[i].look, &l->locations[best].look) : rate > most) {
             most = rate;
             best = i;
         }

@@ -134,7 +134,8 @@ static void describe_members(const struct rf_diagnosis *diagnosis, const size_t 
     for (size_t i = 0; i < n && i < PLACES_NAMED; i++)
         text_addf(out, "%s%s", i > 0 ? ", or " : "", diagnosis->ranked[members[i]].words);
     if (n > PLACES_NAMED)
-        text_addf(out, ", or %zu more such places", n - PLACES_NAMED);
+        text_addf(out, ", or %zu more such place%s", n - PLACES_NAMED,
+                  n - PLACES_NAMED == 1 ? "" : "s");
 }
 
 struct scratch {
@@ -182,7 +183,7 @@ static void describe_members_by_kind(const struct rf_diagnosis *diagnosis, const
         }
     }
     if (left_out > 0)
-        text_addf(out, "; or %zu other possibilities", left_out);
+        text_addf(out, "; or %zu other possibilit%s", left_out, left_out == 1 ? "y" : "ies");
 }
 
 bool describe_together(const struct rf_diagnosis *diagnosis, const size_t members[], size_t n,
@@ -196,15 +197,38 @@ bool describe_together(const struct rf_diagnosis *diagnosis, const size_t member
     return ok;
 }
 
+/* Kinds only: where such a fault would be means little. */
+static void describe_slight(const struct rf_diagnosis *diagnosis, const struct finding *finding,
+                            struct scratch *scratch, struct text *out)
+{
+    size_t kinds = 0;
+    memset(scratch->told, 0, finding->n_members * sizeof *scratch->told);
+    text_add(out, "a fault too slight to show in these readings:");
+    for (size_t i = 0; i < finding->n_members; i++) {
+        const struct hypothesis *leader = &diagnosis->ranked[finding->members[i]].hypothesis;
+        if (scratch->told[i])
+            continue;
+        for (size_t j = i; j < finding->n_members; j++)
+            if (same_kind(leader, &diagnosis->ranked[finding->members[j]].hypothesis))
+                scratch->told[j] = true;
+        if (kinds++ < KINDS_NAMED)
+            for (size_t k = 0; k < leader->n_faults; k++) {
+                text_add(out, k > 0 ? " and " : kinds > 1 ? "; or " : " ");
+                describe_kind_of(&leader->faults[k], out);
+            }
+    }
+    if (kinds > KINDS_NAMED)
+        text_addf(out, "; or one of %zu other kinds", kinds - KINDS_NAMED);
+}
+
 static bool write_words(const struct rf_diagnosis *diagnosis, struct finding *finding, bool slight,
                         struct scratch *scratch)
 {
     struct text words = {0};
-    if (slight)
-        text_add(&words, "a fault too slight to show in these readings (");
-    describe_members_by_kind(diagnosis, finding->members, finding->n_members, scratch, &words);
-    if (slight)
-        text_add(&words, ")");
+    if (slight && finding->n_members > 1)
+        describe_slight(diagnosis, finding, scratch, &words);
+    else
+        describe_members_by_kind(diagnosis, finding->members, finding->n_members, scratch, &words);
     finding->words = words.bytes;
     return !words.failed && words.bytes != NULL;
 }

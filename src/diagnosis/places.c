@@ -3,6 +3,8 @@
 #include "base/memory.h"
 #include "diagnosis/steps.h"
 
+#include <math.h>
+
 /* Chances added up over everything that would show at a place, and what would hurt. */
 
 const char *const danger_words[N_DANGERS] = {
@@ -50,8 +52,10 @@ static void add_hypothesis(struct adding *adding, struct rf_diagnosis *diagnosis
 static int by_chance(const void *a, const void *b)
 {
     const struct place_chance *one = a, *other = b;
-    if (one->chance != other->chance)
-        return one->chance > other->chance ? -1 : 1;
+    /* Chances that differ by rounding only go by place. */
+    double first = round(1e9 * one->chance), second = round(1e9 * other->chance);
+    if (first != second)
+        return first > second ? -1 : 1;
     if (one->look.where != other->look.where)
         return one->look.where < other->look.where ? -1 : 1;
     return one->look.index < other->look.index ? -1 : one->look.index > other->look.index;

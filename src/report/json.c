@@ -204,12 +204,37 @@ static cJSON *blind_object(struct writer *writer, const struct blind_spot *blind
     return object;
 }
 
-static void add_blind(struct writer *writer, cJSON *root)
+static const char *measurement_key(const struct rf_job *job, const struct measurement *read)
+{
+    return read->spot == SPOT_POINT ? job->places[read->place].id : spot_keys[read->spot];
+}
+
+/* The reading that would lift it, as a plan has it. */
+static void add_lift(struct writer *writer, cJSON *object, const struct rf_advice *advice,
+                     size_t blind)
+{
+    for (size_t i = 0; advice != NULL && i < advice->n_lifts; i++) {
+        const struct lift *lift = &advice->lifts[i];
+        if (lift->blind != blind)
+            continue;
+        cJSON *read = cJSON_CreateObject();
+        add_words(writer, read, "setup", setups[lift->read.setup].name);
+        add_words(writer, read, "place", measurement_key(writer->diagnosis->job, &lift->read));
+        add_number(writer, read, "minutes", lift->minutes);
+        add_words(writer, read, "text", lift->words);
+        add(writer, object, "lift", read);
+    }
+}
+
+static void add_blind(struct writer *writer, cJSON *root, const struct rf_advice *advice)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
     cJSON *list = add_list(writer, root, "blind");
-    for (size_t i = 0; i < diagnosis->n_blind; i++)
-        append(writer, list, blind_object(writer, &diagnosis->blind[i]));
+    for (size_t i = 0; i < diagnosis->n_blind; i++) {
+        cJSON *object = blind_object(writer, &diagnosis->blind[i]);
+        add_lift(writer, object, advice, i);
+        append(writer, list, object);
+    }
 }
 
 static void add_misfit(struct writer *writer, cJSON *root)
@@ -221,11 +246,6 @@ static void add_misfit(struct writer *writer, cJSON *root)
 }
 
 /* --- the plan --- */
-
-static const char *measurement_key(const struct rf_job *job, const struct measurement *read)
-{
-    return read->spot == SPOT_POINT ? job->places[read->place].id : spot_keys[read->spot];
-}
 
 static cJSON *plan_object(struct writer *writer, const struct plan *plan)
 {
@@ -278,7 +298,7 @@ void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
     add_findings(&writer, root);
     add_places(&writer, root);
     add_suspects(&writer, root);
-    add_blind(&writer, root);
+    add_blind(&writer, root, advice);
     add_readings(&writer, root);
     if (advice != NULL) {
         add_next(&writer, root, advice);

@@ -155,24 +155,10 @@ static void section_where(struct page *page)
     said_finish(&said);
 }
 
-/* What would lift a blind spot stands with it. */
-static void lifts_of(struct page *page, size_t blind)
-{
-    const struct rf_advice *advice = page->advice;
-    for (size_t i = 0; advice != NULL && i < advice->n_lifts; i++) {
-        if (advice->lifts[i].blind != blind || advice->lifts[i].words == NULL)
-            continue;
-        markup_open(page->markup, "span");
-        markup_attribute(page->markup, "class", "about");
-        markup_textf(page->markup, " \u2013 %s", advice->lifts[i].words);
-        markup_close(page->markup);
-    }
-}
-
 static void section_blind(struct page *page)
 {
     struct said said = {0};
-    say_blind_spots(page->diagnosis, &said);
+    say_blind_spots(page->diagnosis, page->advice, &said);
     if (said.n > 0) {
         open_section(page, "blind", NULL, HEADING_BLIND);
         markup_open(page->markup, "ul");
@@ -180,7 +166,6 @@ static void section_blind(struct page *page)
         for (size_t i = 0; i < said.n; i++) {
             markup_open(page->markup, "li");
             markup_text(page->markup, said.lines[i].words);
-            lifts_of(page, i);
             markup_close(page->markup);
         }
         markup_close(page->markup);

@@ -340,10 +340,28 @@ void say_findings(const struct rf_diagnosis *diagnosis, struct said *said)
 
 /* --- blind spots --- */
 
-void say_blind_spots(const struct rf_diagnosis *diagnosis, struct said *said)
+static const struct lift *find_lift(const struct rf_advice *advice, size_t blind)
 {
-    for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_MOST; i++)
-        add_plain_words(said, diagnosis->blind[i].words);
+    for (size_t i = 0; advice != NULL && i < advice->n_lifts; i++)
+        if (advice->lifts[i].blind == blind)
+            return &advice->lifts[i];
+    return NULL;
+}
+
+void say_blind_spots(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                     struct said *said)
+{
+    for (size_t i = 0; i < diagnosis->n_blind && i < BLIND_MOST; i++) {
+        const struct lift *lift = find_lift(advice, i);
+        struct text words = {0};
+        text_add(&words, diagnosis->blind[i].words);
+        if (lift != NULL) {
+            text_addf(&words, ". To see it, %s (about ", lift->words);
+            say_minutes(lift->minutes, &words);
+            text_add(&words, ")");
+        }
+        add_plain(said, &words);
+    }
     if (diagnosis->n_blind > BLIND_MOST) {
         struct text words = {0};
         text_addf(&words, "and %zu more kinds of fault", diagnosis->n_blind - BLIND_MOST);

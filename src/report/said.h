@@ -41,7 +41,9 @@ void say_findings(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_next(const struct rf_advice *advice, struct said *said);
 /* Of the first plan, which there must be: its minutes, and those to the find. */
 void say_cost(const struct rf_advice *advice, struct said *said);
-void say_blind_spots(const struct rf_diagnosis *diagnosis, struct said *said);
+/* Each with the reading that would lift it; `advice` NULL: without. */
+void say_blind_spots(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
+                     struct said *said);
 void say_figures(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_cautions(const struct rf_diagnosis *diagnosis, struct said *said);
 
@@ -60,8 +62,7 @@ void say_ring(const struct rf_job *job, struct text *out);
 #define HEADING_FIGURES "For the schedule of test results"
 #define HEADING_CAUTIONS "Cautions"
 #define READINGS_ABOUT                                                                             \
-    "As read; as the likeliest explanation has them; as a ring without defect would read by the "  \
-    "recorded lengths and cable."
+    "As read; as the likeliest explanation has them; as this ring would read without it."
 #define SUSPECT_ABOUT "* does not fit the likeliest explanation: read it again"
 
 /* Whether the likeliest explanation is that nothing is wrong, and something explains the readings

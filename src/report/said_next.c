@@ -3,15 +3,6 @@
 
 #include "report/words.h"
 
-#include <math.h>
-
-/* "1 minute", "6 minutes": whole minutes, at least one. */
-static void say_minutes(double minutes, struct text *out)
-{
-    double whole = fmax(1, round(minutes));
-    text_addf(out, "%.0f" NO_BREAK "minute%s", whole, whole == 1 ? "" : "s");
-}
-
 static void add_plain(struct said *said, struct text *words)
 {
     said_add(said, LINE_PLAIN, 0, 0, words);
@@ -31,8 +22,11 @@ void say_cost(const struct rf_advice *advice, struct said *said)
         say_minutes(advice->look_now, &words);
     } else {
         text_add(&words, "; to the find about ");
-        say_minutes(advice->look_now, &words);
-        text_add(&words, " on the average, and no reading would shorten that by what it costs");
+        say_minutes(advice->measure_first, &words);
+        text_add(&words, advice->measure_first < advice->look_now
+                             ? " on the average; if nothing shows there, a reading comes next"
+                             : " on the average, and no reading would shorten that by what it "
+                               "costs");
     }
     text_add(&words, ".");
     add_plain(said, &words);

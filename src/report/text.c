@@ -71,9 +71,6 @@ static const struct lines_section before_plan[] = {
     {HEADING_CHECKS, say_checks, "", ""},     {HEADING_WHERE, say_where_first, "", ""},
     {HEADING_FINDINGS, say_findings, "", ""},
 };
-static const struct lines_section behind_plan[] = {
-    {HEADING_BLIND, say_blind_spots, "- ", "  "},
-};
 static const struct lines_section behind_tables[] = {
     {HEADING_FIGURES, say_figures, "", "  "},
     {HEADING_CAUTIONS, say_cautions, "- ", "  "},
@@ -177,12 +174,13 @@ static void header(const struct rf_diagnosis *diagnosis, struct text *out)
 void report_text(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
                  struct text *out)
 {
-    struct said next = {0};
+    struct said next = {0}, blind = {0};
     header(diagnosis, out);
     say_sections(before_plan, sizeof before_plan / sizeof before_plan[0], diagnosis, out);
     say_next(advice, &next);
     lines(HEADING_NEXT, "", "", &next, out);
-    say_sections(behind_plan, sizeof behind_plan / sizeof behind_plan[0], diagnosis, out);
+    say_blind_spots(diagnosis, advice, &blind);
+    lines(HEADING_BLIND, "- ", "  ", &blind, out);
     text_readings(diagnosis, out);
     say_sections(behind_tables, sizeof behind_tables / sizeof behind_tables[0], diagnosis, out);
 }

@@ -62,6 +62,12 @@ void say_ohms_unit(double ohms, struct text *out)
         text_add(out, NO_BREAK "Ω");
 }
 
+void say_minutes(double minutes, struct text *out)
+{
+    double whole = fmax(1, round(minutes));
+    text_addf(out, "%.0f" NO_BREAK "minute%s", whole, whole == 1 ? "" : "s");
+}
+
 void say_chance(double chance, struct text *out)
 {
     if (chance < 0.005)

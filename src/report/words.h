@@ -17,6 +17,8 @@ void say_spot(const struct rf_job *job, enum spot spot, size_t place, struct tex
 /* "0.48", "134", "over range" (NAN): Ω as a meter shows them. With the unit: "0.48 Ω". */
 void say_ohms(double ohms, struct text *out);
 void say_ohms_unit(double ohms, struct text *out);
+/* "1 minute", "6 minutes": whole minutes, at least one. */
+void say_minutes(double minutes, struct text *out);
 /* "71 %", "<1 %", ">99 %" */
 void say_chance(double chance, struct text *out);
 
