@@ -3,7 +3,7 @@
 #define REVIEW_TALLY_H
 
 /* struct rf_review as the other rooms see it. Whole numbers throughout: see ringfettle/review.h.
- * Sums of 1e-9 hold for more than 4e8 jobs. */
+ * Sums of 1e-9 hold for more than ten million jobs of the largest rings. */
 
 #include "review/line.h"
 
