@@ -76,7 +76,7 @@ struct looked {
     double share; /* of the fault that would have shown where somebody looked */
 };
 
-static bool was_looked_at(const struct rf_job *job, const struct look *look)
+bool looked_at(const struct rf_job *job, const struct look *look)
 {
     if (look->where == LOOK_AT_BOARD)
         return job->board_opened;
@@ -89,7 +89,7 @@ static bool was_looked_at(const struct rf_job *job, const struct look *look)
 static void count_looked(void *context, const struct look *look)
 {
     struct looked *looked = context;
-    if (!was_looked_at(looked->job, look))
+    if (!looked_at(looked->job, look))
         return;
     if (looked->each_enough)
         looked->share = fmax(looked->share, look->share);
@@ -97,18 +97,22 @@ static void count_looked(void *context, const struct look *look)
         looked->share += look->share;
 }
 
+double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
+                           const struct rf_models *models)
+{
+    struct looked looked = {.job = job, .each_enough = fault->family->each_enough};
+    fault_looks(fault, job, models, count_looked, &looked);
+    /* A sum of shares can miss 1 by rounding. */
+    return looked.share < 1.0 - 1e-9 ? 1.0 - looked.share : 0.0;
+}
+
 /* Nothing was found where somebody looked: what is left of the fault's weight. */
 static double log_left_by_looks(const struct hypothesis *hypothesis, const struct rf_job *job,
                                 const struct rf_models *models)
 {
     double left = 1.0;
-    for (size_t i = 0; i < hypothesis->n_faults; i++) {
-        const struct fault *fault = &hypothesis->faults[i];
-        struct looked looked = {.job = job, .each_enough = fault->family->each_enough};
-        fault_looks(fault, job, models, count_looked, &looked);
-        /* A sum of shares can miss 1 by rounding. */
-        left *= looked.share < 1.0 - 1e-9 ? 1.0 - looked.share : 0.0;
-    }
+    for (size_t i = 0; i < hypothesis->n_faults; i++)
+        left *= share_left_by_looks(&hypothesis->faults[i], job, models);
     return log(left);
 }
 

@@ -18,19 +18,23 @@ const char *const danger_words[N_DANGERS] = {
 };
 
 struct adding {
+    const struct rf_job *job;
     struct place_chance *open, *check, *run, *board; /* [place], [place], [run], one */
     double confidence;
+    double left; /* share of the fault not ruled out by looks; its other looks are shares of that */
 };
 
 static void add_look(void *context, const struct look *look)
 {
     struct adding *adding = context;
+    if (looked_at(adding->job, look))
+        return;
     struct place_chance *entry = look->where == LOOK_AT_BOARD ? adding->board
                                  : look->where == LOOK_IN_RUN ? &adding->run[look->index]
                                  : look->kind == LOOK_OPEN    ? &adding->open[look->index]
                                                               : &adding->check[look->index];
     entry->look = *look;
-    entry->chance += adding->confidence * look->share;
+    entry->chance += adding->confidence * look->share / adding->left;
 }
 
 static void add_hypothesis(struct adding *adding, struct rf_diagnosis *diagnosis,
@@ -40,7 +44,11 @@ static void add_hypothesis(struct adding *adding, struct rf_diagnosis *diagnosis
     adding->confidence = candidate->confidence;
     for (size_t i = 0; i < candidate->hypothesis.n_faults; i++) {
         const struct fault *fault = &candidate->hypothesis.faults[i];
-        fault_looks(fault, diagnosis->job, diagnosis->models, add_look, adding);
+        adding->left = fault->family->each_enough
+                           ? 1.0
+                           : share_left_by_looks(fault, diagnosis->job, diagnosis->models);
+        if (adding->left > 0.0)
+            fault_looks(fault, diagnosis->job, diagnosis->models, add_look, adding);
         enum danger danger = fault_danger(fault, diagnosis->job);
         diagnosis->dangers[danger].danger = danger;
         if (!counted[danger])
@@ -70,6 +78,7 @@ enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candid
     if (diagnosis->places == NULL)
         return fail_memory(error);
     struct adding adding = {
+        .job = diagnosis->job,
         .open = diagnosis->places,
         .check = diagnosis->places + places,
         .run = diagnosis->places + 2 * places,

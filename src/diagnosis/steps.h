@@ -25,6 +25,10 @@ struct candidates {
 enum rf_status candidates_enumerate(struct candidates *candidates, const struct rf_job *job,
                                     const struct rf_models *models, struct rf_error *error);
 void candidates_finish(struct candidates *candidates); /* takes zeroed */
+/* Whether the job says that somebody looked there; the share of the fault that looks there leave. */
+bool looked_at(const struct rf_job *job, const struct look *look);
+double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
+                           const struct rf_models *models);
 
 /* rank.c: fits each, sorts them best first (ties keep enumeration order) and makes the confidences
  * sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
