@@ -235,7 +235,7 @@ enum { CENTRES = 3, D_MOST = 16, FREEDOM = 5 };
 
 struct cloud {
     double centre[D_MOST];
-    gsl_matrix *factor; /* of the precision */
+    gsl_matrix *factor; /* lower, of the precision */
     double log_scale;
 };
 
@@ -251,7 +251,7 @@ static void take_cloud(struct cloud *cloud, const struct fit *fit)
         for (size_t k = 0; k <= j; k++)
             gsl_matrix_set(cloud->factor, j, k,
                            j == k ? 1 / fit->factor[j * fit->stride + j]
-                                  : fit->factor[j * fit->stride + k]);
+                                  : fit->factor[k * fit->stride + j]);
         cloud->log_scale += log(gsl_matrix_get(cloud->factor, j, j));
     }
 }

@@ -71,7 +71,7 @@ END_TEST
 START_TEST(refuses_what_is_not_positive_definite)
 {
     double indefinite[4] = {1, 2, 2, 1}, singular[4] = {1, 1, 1, 1};
-    double negative[1] = {-1}, zero[1] = {0}, nan[4] = {1, 0, NAN, 1}, infinite[1] = {INFINITY};
+    double negative[1] = {-1}, zero[1] = {0}, nan[4] = {1, NAN, NAN, 1}, infinite[1] = {INFINITY};
     ck_assert(!cholesky_factor(indefinite, 2, 2));
     ck_assert(!cholesky_factor(singular, 2, 2));
     ck_assert(!cholesky_factor(negative, 1, 1));
