@@ -17,7 +17,7 @@
 #include <stdbool.h>
 #include <stddef.h>
 
-enum { OPTIONS_MAX = 8, SEVERAL = -1 };
+enum { OPTIONS_MAX = 10, SEVERAL = -1 };
 
 struct command_option {
     const char *name;     /* long, without the dashes */

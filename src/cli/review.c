@@ -3,6 +3,7 @@
 
 #include "base/error.h"
 #include "cli/file.h"
+#include "cli/review_pages.h"
 #include "report/report.h"
 #include "report/review_report.h"
 #include "review/merge.h"
@@ -348,7 +349,12 @@ static enum rf_status put_summary(const struct settings *settings, const char *m
 
 static enum rf_status refuse_together(const struct invocation *invocation, struct rf_error *error)
 {
-    static const char *const of_jobs[] = {"csv", "rates", "threads"};
+    static const char *const of_jobs[] = {"csv", "page", "rates", "threads"};
+    for (size_t i = 0; i < invocation->n_operands; i++)
+        if (option_value(invocation, "page") != NULL &&
+            strcmp(invocation->operands[i], "-") == 0)
+            return fail(error, RF_USAGE, "review: --page: found - among the paths; needs files or "
+                                         "folders, since jobs are read a second time");
     if (option_value(invocation, "weight") != NULL && option_value(invocation, "learn") == NULL)
         return fail(error, RF_USAGE, "review: --weight goes with --learn");
     for (size_t i = 0; i < sizeof of_jobs / sizeof of_jobs[0]; i++)
@@ -378,6 +384,8 @@ static enum rf_status review_all(const struct invocation *invocation, struct rf_
     if (status == RF_OK)
         status =
             put_summary(&settings, merge ? origin.models : rf_models_name(models), review, error);
+    if (status == RF_OK && option_value(invocation, "page") != NULL)
+        status = write_review_pages(invocation, models, review, error);
     if (status == RF_OK)
         status = learn(invocation, &settings, review, error);
     merge_origin_finish(&origin);
@@ -414,11 +422,13 @@ const struct command command_review = {
         "ends the run in good order, with the summary so far.\n\n"
         "A large archive can be cut by lines and reviewed in parts, on several machines: "
         "--merge reads what review --json wrote of each and gives the summary of the whole.",
-    .n_options = 8,
+    .n_options = 9,
     .options =
         {
             {"json", NULL, "one diagnosis a line as JSON, and the summary as the last line"},
             {"csv", "FILE", "write a table of the jobs to FILE besides"},
+            {"page", "DIR", "write pages to look at into DIR: index.html, and one for each of the "
+                            "most worrying jobs"},
             {"learn", "FILE",
              "write fault priors learned from the jobs that say what was found, at least 20, to "
              "FILE, a faults.json for --models"},

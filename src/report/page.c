@@ -144,13 +144,10 @@ static void section_where(struct page *page)
     markup_open(page->markup, "div");
     said_lines(page, &said, true);
     findings(page);
-    if (ring_map_numbers(page->diagnosis->job))
-        page_places(page);
+    page_places(page);
     markup_close(page->markup);
     page_map(page);
     markup_close(page->markup);
-    if (!ring_map_numbers(page->diagnosis->job))
-        page_places(page);
     close_section(page);
     said_finish(&said);
 }

@@ -7,6 +7,11 @@
 #include "base/text.h"
 #include "review/tally.h"
 
+extern const char *const review_verdict_words[N_VERDICTS];
+extern const double review_level; /* of the intervals */
+/* The name of a sort of fault in words: "two defects". */
+void say_sort(size_t family, struct text *out);
+
 /* One line of the terminal: job, verdict, confidence, where, whether what was found agrees. */
 void report_review_line(const struct review_line *line, struct text *out);
 

@@ -10,9 +10,9 @@
 
 enum { JOB_COLUMNS = 22, VERDICT_COLUMNS = 21, NAME_COLUMNS = 26, COUNT_COLUMNS = 8 };
 
-static const double level = 0.9; /* of the intervals */
+const double review_level = 0.9;
 
-static const char *const verdict_words[N_VERDICTS] = {
+const char *const review_verdict_words[N_VERDICTS] = {
     [VERDICT_NO_DEFECT] = "shows no defect",
     [VERDICT_DEFECT] = "DEFECT",
     [VERDICT_UNDECIDED] = "undecided",
@@ -66,7 +66,7 @@ void report_review_line(const struct review_line *line, struct text *out)
 {
     cell_left(out, line->job, JOB_COLUMNS);
     text_add(out, " ");
-    cell_left(out, verdict_words[line->verdict], VERDICT_COLUMNS);
+    cell_left(out, review_verdict_words[line->verdict], VERDICT_COLUMNS);
     add_chance(out, line->confidence);
     text_add(out, "  ");
     add_plain(out, line->words);
@@ -84,6 +84,11 @@ static void add_spaced(struct text *out, const char *name)
 {
     for (; *name != '\0'; name++)
         text_append(out, *name == '_' ? " " : name, 1);
+}
+
+void say_sort(size_t family, struct text *out)
+{
+    add_spaced(out, sort_name(family));
 }
 
 /* A name and a number, the line not ended. */
@@ -106,7 +111,7 @@ static void count_line(struct text *out, const char *name, uint64_t count)
 static void family_line(struct text *out, size_t family, const char *what, uint64_t count)
 {
     struct text name = {0};
-    add_spaced(&name, sort_name(family));
+    say_sort(family, &name);
     text_addf(&name, "%s%s", what[0] != '\0' ? ", " : "", what);
     if (!name.failed)
         count_line(out, name.bytes, count);
@@ -170,7 +175,7 @@ static void say_mistakes(const struct rf_review *review, struct text *out)
 static void share_line(struct text *out, const char *name, uint64_t count, uint64_t of)
 {
     double low, high;
-    rf_wilson((size_t)count, (size_t)of, level, &low, &high);
+    rf_wilson((size_t)count, (size_t)of, review_level, &low, &high);
     count_cells(out, name, count);
     text_addf(out, "  %5.1f %%  (%.1f to %.1f)\n", 100 * (double)count / (double)of, 100 * low,
               100 * high);
@@ -185,7 +190,7 @@ static void say_calibration(const struct scorecard *score, struct text *out)
         if (bin->jobs == 0)
             continue;
         double low, high, jobs = (double)bin->jobs;
-        rf_wilson((size_t)bin->right, (size_t)bin->jobs, level, &low, &high);
+        rf_wilson((size_t)bin->right, (size_t)bin->jobs, review_level, &low, &high);
         text_addf(out, "  %.1f to %.1f %10llu %7llu   %.3f   %.3f   %.3f to %.3f\n",
                   (double)i / CALIBRATION_BINS, (double)(i + 1) / CALIBRATION_BINS,
                   (unsigned long long)bin->jobs, (unsigned long long)bin->right,
@@ -204,7 +209,7 @@ static void say_confusion(const struct scorecard *score, struct text *out)
             if (score->confusion[found][first] == 0)
                 continue;
             struct text first_words = {0};
-            add_spaced(&first_words, sort_name(first));
+            say_sort(first, &first_words);
             if (!first_words.failed)
                 family_line(out, found, found == first ? "the same" : first_words.bytes,
                             score->confusion[found][first]);

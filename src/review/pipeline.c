@@ -12,6 +12,7 @@ enum { WINDOW = 64 };
 /* A job on its way; `job` NULL: what stands there was refused. */
 struct passage {
     struct rf_job *job;
+    uint64_t number; /* of the job among those read */
     bool done;
     enum rf_status status;
     struct rf_error error;
@@ -25,6 +26,7 @@ struct run {
     const struct review_sink *sink;
     const volatile sig_atomic_t *stop;
     struct rf_review *review;
+    uint64_t n_read;
     struct passage window[WINDOW];
 };
 
@@ -40,6 +42,7 @@ static enum rf_status read_window(struct run *run, size_t *n, struct rf_error *e
         struct passage *passage = &run->window[*n];
         passage->status = review_input_next(run->input, &passage->job, &passage->error);
         passage->done = passage->status != RF_OK;
+        passage->number = passage->done ? 0 : ++run->n_read;
         if (passage->status == RF_MEMORY)
             return fail_memory(error);
         if (passage->status == RF_OK && passage->job == NULL)
@@ -55,6 +58,7 @@ static void diagnose_passage(const struct run *run, struct passage *passage)
     if (passage->status == RF_OK)
         passage->status = line_of_diagnosis(&passage->line, diagnosis, &passage->error);
     if (passage->status == RF_OK) {
+        passage->line.number = passage->number;
         run->sink->render(run->sink->context, diagnosis, &passage->line, &passage->out);
         if (passage->out.failed)
             passage->status = fail_memory(&passage->error);
