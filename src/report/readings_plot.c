@@ -317,7 +317,7 @@ static void draw(struct plot *plot, double taken[])
 {
     size_t n_taken = 0;
     plot->scene->width = WIDTH;
-    plot->scene->height = plot->by_place ? HEIGHT : HEIGHT - 26;
+    plot->scene->height = plot->by_place ? HEIGHT : HEIGHT - 16;
     entitle(plot);
     draw_bands(plot, ROLE_SOUND_BAND, plot->sound);
     draw_bands(plot, ROLE_FIT_BAND, plot->fitted);

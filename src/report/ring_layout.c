@@ -7,14 +7,24 @@
 #include <math.h>
 #include <string.h>
 
-enum { WRAPPED_MOST = 14, TWO_LINES_MOST = 24, ONE_LINE_MOST = 60 };
+enum { WRAPPED_MOST = 14, TWO_LINES_MOST = 24, ONE_LINE_MOST = 60, ONE_LINE_ROWS = 80 };
 enum { GAP = 11, RAIL_LEAST = 150, BEND = 62, TOP = 64, WIDTH = 380, SPUR_STEP = 20 };
+enum { NARROW_BEND = 48, NARROW_STEP = 6 }; /* where numbers stand in several columns */
 
 static double row_gap(enum label_style style)
 {
     static const double gaps[] = {
         [LABEL_WRAPPED] = 48, [LABEL_TWO_LINES] = 34, [LABEL_ONE_LINE] = 19, [LABEL_NUMBER] = 8};
     return gaps[style];
+}
+
+enum label_style label_style(const struct rf_job *job)
+{
+    size_t rows = job->n_ring + job->n_spurs;
+    return rows <= WRAPPED_MOST                                       ? LABEL_WRAPPED
+           : rows <= TWO_LINES_MOST                                   ? LABEL_TWO_LINES
+           : job->n_ring <= ONE_LINE_MOST && rows <= ONE_LINE_ROWS ? LABEL_ONE_LINE
+                                                                      : LABEL_NUMBER;
 }
 
 /* --- heights moved apart --- */
@@ -120,10 +130,10 @@ static void place_rows(struct ring_layout *layout, const struct rf_job *job, con
     double *y = scratch + 2 * n;
     for (size_t i = 0; i < n; i++)
         y[i] = layout->mark[places[i]].y;
-    spread_apart(y, n, row_gap(layout->style), layout->top + 8, layout->height - 18, scratch);
+    spread_apart(y, n, row_gap(layout->style), layout->top + 8, layout->height - 36, scratch);
     for (size_t i = 0; i < n; i++) {
         size_t place = places[i], depth = spur_depth(job, place);
-        double away = SPUR_STEP * (double)(depth < 4 ? depth : 4);
+        double away = layout->spur_step * (double)(depth < 4 ? depth : 4);
         layout->row[place] = y[i];
         if (depth > 0) {
             layout->mark[place].x =
@@ -157,7 +167,7 @@ static void lay(struct ring_layout *layout, const struct rf_diagnosis *diagnosis
         layout->rail = needs;
     }
     layout->length = 2 * layout->rail + 3.14159265358979 * layout->bend;
-    layout->height = layout->top + layout->rail + layout->bend + 24;
+    layout->height = layout->top + layout->rail + layout->bend + 42;
     place_ring(layout, diagnosis);
     for (int left = 0; left < 2; left++) {
         size_t n = side_places(layout, job, left == 1, places);
@@ -168,18 +178,19 @@ static void lay(struct ring_layout *layout, const struct rf_diagnosis *diagnosis
 bool ring_layout_init(struct ring_layout *layout, const struct rf_diagnosis *diagnosis)
 {
     const struct rf_job *job = diagnosis->job;
-    size_t n = job->n_places, written = job->n_ring + job->n_spurs;
+    size_t n = job->n_places;
+    enum label_style style = label_style(job);
+    bool numbers = style == LABEL_NUMBER;
+    double bend = numbers ? NARROW_BEND : BEND;
     *layout = (struct ring_layout){
-        .style = written <= WRAPPED_MOST    ? LABEL_WRAPPED
-                 : written <= TWO_LINES_MOST ? LABEL_TWO_LINES
-                 : written <= ONE_LINE_MOST ? LABEL_ONE_LINE
-                                            : LABEL_NUMBER,
+        .style = style,
         .width = WIDTH,
         .middle = WIDTH / 2.0,
-        .left = WIDTH / 2.0 - BEND,
-        .right = WIDTH / 2.0 + BEND,
+        .left = WIDTH / 2.0 - bend,
+        .right = WIDTH / 2.0 + bend,
         .top = TOP,
-        .bend = BEND,
+        .bend = bend,
+        .spur_step = numbers ? NARROW_STEP : SPUR_STEP,
         .along = NEW_ARRAY(double, job->n_ring + 2),
         .mark = NEW_ARRAY(struct position, n),
         .row = NEW_ARRAY(double, n),

@@ -19,6 +19,8 @@ enum label_style {
     LABEL_NUMBER /* its number in the list, in two columns by turns */
 };
 
+enum label_style label_style(const struct rf_job *job);
+
 struct position {
     double x, y;
 };
@@ -28,6 +30,7 @@ struct ring_layout {
     double width, height;
     double left, right, middle; /* x of the rails and between */
     double top, rail, bend;     /* y of the rails' upper ends; a rail's length; the bend's radius */
+    double spur_step; /* from the rail to a spur point, and from that to the next */
     double length;              /* of the ring as drawn, px */
     double *along;              /* [ring place] px from the out end */
     struct position *mark;      /* [place] */

@@ -45,7 +45,7 @@ double chance_at_board(const struct rf_diagnosis *diagnosis)
 
 bool ring_map_numbers(const struct rf_job *job)
 {
-    return job->n_ring + job->n_spurs > 60;
+    return label_style(job) == LABEL_NUMBER;
 }
 
 size_t place_number(const struct rf_job *job, size_t place)
@@ -250,41 +250,93 @@ static void draw_words(struct map *map, size_t place)
     text_finish(&name);
 }
 
-/* Numbers stand in two columns by turns; those with a chance in a third. */
-static void draw_number(struct map *map, size_t place, size_t turn)
+/* Numbers stand in two columns by turns, beyond the deepest spur. */
+static double number_x(const struct map *map, size_t place, size_t column)
 {
-    double chance = chance_at_place(map->diagnosis, place);
-    double away = chance >= place_said ? 2 * 28 : turn % 2 == 0 ? 0 : 28;
-    double x = label_x(map, place);
-    x += map->layout->on_left[place] ? -away : away;
+    const struct rf_job *job = map->diagnosis->job;
+    size_t deepest = 0;
+    for (size_t spur = job->n_ring + 2; spur < job->n_places; spur++)
+        if (spur_depth(job, spur) > deepest)
+            deepest = spur_depth(job, spur);
+    double away = map->layout->bend + 12 + map->layout->spur_step * (double)fmin((double)deepest, 4) +
+                  26 * (double)column;
+    return map->layout->on_left[place] ? map->layout->middle - away : map->layout->middle + away;
+}
+
+/* How many rows of its side stand above its own. */
+static size_t rows_above(const struct map *map, size_t place)
+{
+    const struct rf_job *job = map->diagnosis->job;
+    size_t n = 0;
+    for (size_t other = 1; other < job->n_places; other++)
+        n += !place_is_end(job, other) && map->layout->on_left[other] == map->layout->on_left[place] &&
+             map->layout->row[other] < map->layout->row[place];
+    return n;
+}
+
+static void draw_number(struct map *map, size_t place)
+{
+    double x = number_x(map, place, rows_above(map, place) % 2), y = map->layout->row[place];
+    bool left = map->layout->on_left[place];
+    struct position at = map->layout->mark[place];
     struct text number = {0};
     text_addf(&number, "%zu", place_number(map->diagnosis->job, place));
-    draw_leader(map, place, x);
-    if (!number.failed)
-        label_line(map, place, x, map->layout->row[place] + 4, ROLE_NAME, note_size, chance,
-                   number.bytes);
+    scene_segment(map->scene, ROLE_LEADER, at.x, at.y, x + (left ? 2 : -2), y);
+    if (!number.failed &&
+        scene_label(map->scene, ROLE_NAME, x, y + 4, left ? ANCHOR_END : ANCHOR_START, note_size,
+                    40, number.bytes) > 0)
+        title_of_place(map, place);
     map->scene->failed = map->scene->failed || number.failed;
     text_finish(&number);
+}
+
+/* The chances of numbered places, in a third column: "57: 20 %". */
+enum { NUMBERED_CHANCES_MOST = 60 };
+static void draw_numbered_chances(struct map *map, bool left)
+{
+    const struct rf_diagnosis *diagnosis = map->diagnosis;
+    size_t places[NUMBERED_CHANCES_MOST], n = 0;
+    double y[NUMBERED_CHANCES_MOST], scratch[2 * NUMBERED_CHANCES_MOST];
+    for (size_t place = 1; place < diagnosis->job->n_places && n < NUMBERED_CHANCES_MOST; place++) {
+        if (place_is_end(diagnosis->job, place) || map->layout->on_left[place] != left ||
+            chance_at_place(diagnosis, place) < place_said)
+            continue;
+        size_t at = n++;
+        for (; at > 0 && y[at - 1] > map->layout->row[place]; at--) {
+            y[at] = y[at - 1];
+            places[at] = places[at - 1];
+        }
+        y[at] = map->layout->row[place];
+        places[at] = place;
+    }
+    spread_apart(y, n, 15, map->layout->top, map->layout->height - 20, scratch);
+    for (size_t i = 0; i < n; i++) {
+        struct text words = {0};
+        text_addf(&words, "%zu: ", place_number(diagnosis->job, places[i]));
+        say_chance(chance_at_place(diagnosis, places[i]), &words);
+        double x = number_x(map, places[i], 2);
+        if (!words.failed)
+            scene_label(map->scene, ROLE_NUMBER, x, y[i] + 4, left ? ANCHOR_END : ANCHOR_START,
+                        note_size, left ? x - 2 : map->layout->width - 2 - x, words.bytes);
+        map->scene->failed = map->scene->failed || words.failed;
+        text_finish(&words);
+    }
 }
 
 static void draw_labels(struct map *map)
 {
     const struct rf_job *job = map->diagnosis->job;
-    size_t turn[2] = {0, 0};
-    for (size_t i = 1; i <= job->n_ring + 1; i++) {
-        /* a place, then what hangs on it, as the rows are */
-        for (size_t place = i; place < job->n_places; place = place == i ? job->n_ring + 2
-                                                                         : place + 1) {
-            if (ring_place_of(job, place) != i && !(i == 1 && ring_place_of(job, place) == 0))
-                continue;
-            if (place_is_end(job, place))
-                continue;
-            if (map->layout->style == LABEL_NUMBER)
-                draw_number(map, place, turn[map->layout->on_left[place]]++);
-            else
-                draw_words(map, place);
-        }
+    bool numbers = map->layout->style == LABEL_NUMBER;
+    for (size_t place = 1; place < job->n_places; place++) {
+        if (place_is_end(job, place))
+            continue;
+        if (numbers)
+            draw_number(map, place);
+        else
+            draw_words(map, place);
     }
+    for (int left = 0; left < 2 && numbers; left++)
+        draw_numbered_chances(map, left == 1);
 }
 
 /* --- the board --- */

@@ -154,6 +154,8 @@ static double character_width(const char *at, size_t length)
             return 1.0;
         return *at >= 'A' && *at <= 'Z' ? 0.76 : 0.66;
     }
+    if (memcmp(at, "\u00A0", 2) == 0)
+        return 0.42;
     char alone[5] = {0};
     memcpy(alone, at, length < 4 ? length : 4);
     size_t columns = text_columns(alone);
