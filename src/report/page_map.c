@@ -118,7 +118,7 @@ static void place_row(struct page *page, size_t place)
 
 void page_places(struct page *page)
 {
-    static const char *const columns[] = {"No.", "place", "m before, fitted", "recorded",
+    static const char *const columns[] = {"No.", "place", "m before", "recorded",
                                           "chance"};
     const struct rf_job *job = page->diagnosis->job;
     struct markup *markup = page->markup;

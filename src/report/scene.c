@@ -151,7 +151,7 @@ static double character_width(const char *at, size_t length)
         if (strchr("iljI.,:;'|! ()[]ft", *at) != NULL)
             return 0.42;
         if (strchr("mwMW@%", *at) != NULL)
-            return 1.0;
+            return 1.12;
         return *at >= 'A' && *at <= 'Z' ? 0.76 : 0.66;
     }
     if (memcmp(at, "\u00A0", 2) == 0)
