@@ -144,10 +144,14 @@ static void section_where(struct page *page)
     markup_open(page->markup, "div");
     said_lines(page, &said, true);
     findings(page);
-    page_places(page);
+    bool beside = ring_map_numbers(page->diagnosis->job);
+    if (beside)
+        page_places(page);
     markup_close(page->markup);
     page_map(page);
     markup_close(page->markup);
+    if (!beside)
+        page_places(page);
     close_section(page);
     said_finish(&said);
 }

@@ -57,6 +57,7 @@ static const char *const sheet[] = {
     "gap:36px}.plots{grid-template-columns:minmax(0,1fr) minmax(0,1fr)}}\n",
     ".wide{overflow-x:auto}\n",
     "table{border-collapse:collapse;width:100%}\n",
+    "section>table,details>table{max-width:44rem}\n",
     "th,td{padding:5px 6px;text-align:right;vertical-align:top;border-top:1px solid var(--rule);"
     "font-variant-numeric:tabular-nums}\n",
     "th:first-child,td:first-child,.left{text-align:left}\n",
@@ -98,9 +99,9 @@ static const char *const sheet[] = {
     ".link{stroke:var(--link);stroke-width:5}\n",
     ".terminal{fill:var(--paper);stroke:var(--ink);stroke-width:2}\n",
     "@page{size:A4;margin:14mm}\n",
-    "@media print{html{font-size:10.5pt}body{padding:0;max-width:none}nav{display:none}"
+    "@media print{:root{--paper:#fff}html{font-size:10.5pt}body{padding:0;max-width:none}nav{display:none}"
     "section{margin-top:14pt}figure,.alarm,li,tr,.keep{break-inside:avoid}"
-    "h2,h3,thead{break-after:avoid}"
+    "h2,h3,thead,summary{break-after:avoid}"
     ".beside{grid-template-columns:minmax(0,1fr) minmax(0,1fr);gap:16pt}"
     ".plots{grid-template-columns:minmax(0,1fr) minmax(0,1fr)}"
     "svg.map{max-height:215mm}"
