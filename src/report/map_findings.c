@@ -98,17 +98,6 @@ void line_along(struct map *map, enum scene_role role, double from, double to, d
     scene_corner(map->scene, end.x, end.y);
 }
 
-struct position middle_of_run(const struct map *map, size_t run)
-{
-    const struct ring_layout *layout = map->layout;
-    const struct rf_job *job = map->diagnosis->job;
-    if (run_on_ring(job, run))
-        return along_ring(layout, (layout->along[run] + layout->along[run + 1]) / 2, 0);
-    struct position from = layout->mark[run_near_end(job, run)];
-    struct position to = layout->mark[run_far_end(run)];
-    return (struct position){(from.x + to.x) / 2, (from.y + to.y) / 2};
-}
-
 /* A line along a run, `aside` px off it. */
 static void line_along_run(struct map *map, enum scene_role role, size_t run, double aside)
 {
@@ -161,23 +150,39 @@ static unsigned conductors_of(const struct fault *fault)
     return fault->conductor == WHOLE_CABLE ? 7u : 1u << fault->conductor;
 }
 
-/* What happens to a conductor in a run: a box where it has too much resistance, a gap between two
- * strokes where it is broken. */
+static struct position middle_of_conductor(const struct map *map, size_t run, double aside)
+{
+    const struct ring_layout *layout = map->layout;
+    const struct rf_job *job = map->diagnosis->job;
+    if (run_on_ring(job, run))
+        return along_ring(layout, (layout->along[run] + layout->along[run + 1]) / 2, aside);
+    struct position from = layout->mark[run_near_end(job, run)];
+    struct position to = layout->mark[run_far_end(run)];
+    double length = fmax(hypot(to.x - from.x, to.y - from.y), 1);
+    return (struct position){(from.x + to.x) / 2 - aside * (to.y - from.y) / length,
+                             (from.y + to.y) / 2 + aside * (to.x - from.x) / length};
+}
+
+struct position middle_of_run(const struct map *map, size_t run)
+{
+    return middle_of_conductor(map, run, 0);
+}
+
+/* What happens to a conductor in a run: a box where it has too much resistance, a gap where it is
+ * broken. */
 static void draw_defect(struct map *map, const struct drawn *drawn)
 {
     unsigned conductors = conductors_of(drawn->fault);
     if (!in_run(drawn->fault) || has(drawn->fault, FIELD_PAIR))
         return;
-    struct position at = middle_of_run(map, drawn->fault->run);
-    bool right = at.x > map->layout->middle;
     for (int i = 0; i < N_CONDUCTORS; i++) {
-        double x = at.x + (right ? apart[i] : -apart[i]);
+        struct position at = middle_of_conductor(map, drawn->fault->run, apart[i]);
         if ((conductors & 1u << i) == 0)
             continue;
         if (drawn->has_value)
-            scene_box(map->scene, ROLE_RESISTOR, x - 2.5, at.y - 5, 5, 10);
+            scene_box(map->scene, ROLE_RESISTOR, at.x - 3, at.y - 4.5, 6, 9);
         else
-            scene_box(map->scene, ROLE_CUT, x - 3, at.y - 2.5, 6, 5);
+            scene_disc(map->scene, ROLE_CUT, at.x, at.y, 3.6);
     }
 }
 

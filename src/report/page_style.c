@@ -62,7 +62,7 @@ static const char *const sheet[] = {
     "font-variant-numeric:tabular-nums}\n",
     "th:first-child,td:first-child,.left{text-align:left}\n",
     "tbody th{font-weight:400}tbody th[colspan]{font-weight:700;padding-top:14px;border-top:0}\n",
-    "thead th{overflow-wrap:normal;border-top:0;border-bottom:2px solid var(--ink)}\n",
+    "thead th,thead td{overflow-wrap:normal;border-top:0;border-bottom:2px solid var(--ink)}\n",
     "tr.again{background:var(--card)}\n",
     "details{margin-top:14px}summary{cursor:pointer;padding:9px 0;font-weight:700}\n",
     "footer{margin-top:30px;color:var(--soft);font-size:.92rem}\n",

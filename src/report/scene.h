@@ -20,7 +20,7 @@
     X(ROLE_NEUTRAL, "neutral")                                                                     \
     X(ROLE_CPC, "cpc")                                                                             \
     X(ROLE_CPC_STRIPE, "cpc-stripe")                                                               \
-    X(ROLE_CUT, "cut")             /* two strokes where a conductor is broken */                   \
+    X(ROLE_CUT, "cut")             /* a gap where a conductor is broken */                         \
     X(ROLE_RESISTOR, "resistor")   /* a box where it is not as good as it was */                   \
     X(ROLE_FINDING_1, "finding-1") /* where a finding lies: a band along the ring, each in its */  \
     X(ROLE_FINDING_2, "finding-2") /* own pattern */                                               \
