@@ -339,11 +339,40 @@ static double objective_here(struct fitter *f, enum noise noise, size_t d)
     return misfit_of_readings(f, noise) + half_square(f->theta, d);
 }
 
+/* A reading between these chances is neither kept nor written off. Once it tips over, others may fall
+ * into place, and F falls by more than any step here promises. */
+static const double written_off = 0.005, kept = 0.97;
+
+static bool may_tip(const struct fitter *f)
+{
+    for (size_t i = 0; i < f->n_observations; i++)
+        if (f->weights[i] > written_off && f->weights[i] < kept)
+            return true;
+    return false;
+}
+
+/* What F cannot fall below, whatever θ: every reading fitted, no penalty. */
+static double least_objective(const struct fitter *f)
+{
+    double sum = 0.0;
+    for (size_t i = 0; i < f->n_observations; i++) {
+        const struct observation *o = &f->observations[i];
+        if (observed(f, o))
+            sum -= log_mixture(o, o->ohms, NULL, NULL);
+        else
+            sum -= forward_reachable(f->forward, o->measurement) ? f->log_open_with_path
+                                                                 : o->log_no_path;
+    }
+    return sum;
+}
+
 /* What log Z can hardly exceed, F being `value` and the next step promising so much less; the factor
  * is of that step. The determinant changes little from here to the optimum, so most of it counts. */
 static double hardly_exceeded(const struct fitter *f, size_t d, double value, double promise)
 {
     double log_det = cholesky_log_det(f->hessian, d, f->stride);
+    if (may_tip(f))
+        return -least_objective(f);
     return promise_kept * promise + promise_slack - value - 0.5 * fmax(0.0, 0.8 * log_det - 4.0);
 }
 
