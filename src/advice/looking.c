@@ -27,6 +27,13 @@ double minutes_to_reach(const struct rf_job *job, size_t place)
     return place == job->n_places ? job->board_reach_minutes : job->places[place].reach_minutes;
 }
 
+size_t place_to_reach(const struct rf_job *job, const struct look *look)
+{
+    return look->where == LOOK_AT_BOARD ? job->n_places
+           : look->where == LOOK_IN_RUN ? run_far_end(look->index)
+                                        : look->index;
+}
+
 void looking_finish(struct looking *l)
 {
     free(l->locations);
@@ -67,10 +74,7 @@ static size_t locate(struct listing *listing, const struct look *look)
     l->locations[l->n_locations] = (struct location){
         .look = *look,
         .minutes = minutes_of_look(job, &listing->diagnosis->models->effort, look),
-        /* A run is reached from the place it leads to. */
-        .reach = look->where == LOOK_AT_BOARD ? job->n_places
-                 : look->where == LOOK_IN_RUN ? run_far_end(look->index)
-                                              : look->index,
+        .reach = place_to_reach(job, look),
     };
     return l->n_locations++;
 }

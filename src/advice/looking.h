@@ -51,8 +51,10 @@ struct looking {
 /* Minutes of looking there, without reaching it. */
 double minutes_of_look(const struct rf_job *job, const struct effort_model *effort,
                        const struct look *look);
-/* Minutes of reaching a place (the board: n_places). */
+/* Minutes of reaching a place (the board: n_places), and which place a look has to reach: a run is
+ * reached from the place it leads to. */
 double minutes_to_reach(const struct rf_job *job, size_t place);
+size_t place_to_reach(const struct rf_job *job, const struct look *look);
 
 enum rf_status looking_init(struct looking *looking, const struct rf_diagnosis *diagnosis, size_t n,
                             struct rf_error *error);

@@ -85,8 +85,8 @@ struct rf_diagnosis {
     size_t n_blind;
     struct blind_spot *blind;
     struct danger_chance dangers[N_DANGERS]; /* indexed by danger; [0] unused */
-    double *sound; /* [reading] what a ring wired as recorded would read, from the job's record
-                    * (lengths and cable) and not from its readings: the prior's median */
+    double *sound; /* [reading] what this ring would read if it were wired as recorded: with the
+                    * lengths, cable and instrument of the best fit, and without its faults */
     struct {
         double p;
         bool flag;

@@ -114,8 +114,8 @@ enum rf_status section_readings(struct page *page, struct rf_error *error)
     open_section(page, "readings", NULL, HEADING_READINGS);
     markup_element(page->markup, "p", "about",
                    "Dots: as read; triangles at the top: over range; a ring around one: read it "
-                   "again. Unbroken line: as the likeliest explanation has them; dashed: as this "
-                   "ring would read without it; each with the "
+                   "again. Unbroken line: as the likeliest explanation has them; dashed: as a ring "
+                   "without defect would read by the recorded lengths and cable; each with the "
                    "range in which 19 of 20 readings lie. Along the bottom: the places, and metres "
                    "of cable from the outgoing ends, as fitted.");
     enum rf_status status = plots(page, error);

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "report/said.h"
 
+#include "advice/looking.h"
 #include "base/memory.h"
 #include "report/words.h"
 
@@ -260,20 +261,44 @@ static void say_first(const struct rf_diagnosis *diagnosis, const struct place_c
     add_plain(said, &words);
 }
 
+static bool is_said(const struct place_chance *place)
+{
+    return place->look.kind == LOOK_OPEN && place->chance >= place_said;
+}
+
+/* What to look at first: the most chance a minute, as the plan has it; n_places where nothing is
+ * worth saying. */
+static size_t first_place(const struct rf_diagnosis *diagnosis)
+{
+    const struct rf_job *job = diagnosis->job;
+    size_t first = diagnosis->n_places;
+    double most = 0;
+    for (size_t i = 0; i < diagnosis->n_places; i++) {
+        const struct place_chance *place = &diagnosis->places[i];
+        double minutes = minutes_of_look(job, &diagnosis->models->effort, &place->look) +
+                         minutes_to_reach(job, place_to_reach(job, &place->look));
+        if (!is_said(place) || place->chance <= most * fmax(minutes, 1e-9) * (1 + 1e-9))
+            continue;
+        most = place->chance / fmax(minutes, 1e-9);
+        first = i;
+    }
+    return first;
+}
+
 static void say_places(const struct rf_diagnosis *diagnosis, struct said *said)
 {
-    size_t n = 0;
+    size_t first = first_place(diagnosis), n = 1;
+    if (first == diagnosis->n_places)
+        return;
+    say_first(diagnosis, &diagnosis->places[first], said);
     for (size_t i = 0; i < diagnosis->n_places && n < PLACES_MOST; i++) {
         const struct place_chance *place = &diagnosis->places[i];
-        if (place->look.kind != LOOK_OPEN || place->chance < place_said)
+        if (i == first || !is_said(place))
             continue;
-        if (n++ == 0) {
-            say_first(diagnosis, place, said);
-            continue;
-        }
         struct text words = {0};
         say_look(diagnosis->job, &place->look, &words);
         add_chance(said, place->chance, &words);
+        n++;
     }
 }
 
