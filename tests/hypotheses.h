@@ -11,26 +11,13 @@
 #include "fit/fit.h"
 #include "simulation/simulation.h"
 
+#include "shipped_models.h"
+#include "suite.h"
+
 #include <cjson/cJSON.h>
 #include <check.h>
-#include <gsl/gsl_errno.h>
 #include <stdlib.h>
 #include <string.h>
-
-static struct rf_models *models;
-
-static inline void load_models(void)
-{
-    struct rf_error error;
-    gsl_set_error_handler_off();
-    ck_assert_msg(rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error) == RF_OK, "%s",
-                  error.text);
-}
-
-static inline void unload_models(void)
-{
-    rf_models_destroy(models);
-}
 
 /* `ring` and `readings` without their outer braces; `more` goes behind them, with its comma. */
 static inline struct rf_job *job_of(const char *ring, const char *readings, const char *more)
@@ -105,15 +92,6 @@ static inline struct fit bench_fit(struct bench *bench, const struct hypothesis 
     bench_wire(bench, hypothesis);
     ck_assert_int_eq(fitter_fit(bench->fitter, &bench->wiring, NULL, &fit), RF_OK);
     return fit;
-}
-
-static inline int run_suite(Suite *suite)
-{
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
 }
 
 #endif

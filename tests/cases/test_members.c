@@ -6,14 +6,15 @@
 #include "base/json.h"
 #include "faults/fault.h"
 
+#include "../shipped_models.h"
+#include "../suite.h"
+#include "reference.h"
+
 #include <check.h>
 #include <stdio.h>
 #include <stdlib.h>
-#include <string.h>
 
-enum { MOST_FAULTS = 2000, MOST_PATH = 4096, JOBS = 70 };
-
-static const char *const files[] = {"standard.ndjson", "extra.ndjson", "nolength.ndjson"};
+enum { MOST_FAULTS = 2000, JOBS = 70 };
 
 struct members {
     struct fault faults[MOST_FAULTS];
@@ -29,19 +30,6 @@ static bool collect(void *context, const struct fault *fault)
 }
 
 static struct members members;
-static struct rf_models *models;
-
-static void load_models(void)
-{
-    struct rf_error error = {0};
-    enum rf_status status = rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error);
-    ck_assert_msg(status == RF_OK, "%s", error.text);
-}
-
-static void drop_models(void)
-{
-    rf_models_destroy(models);
-}
 
 static void check_is_member(const cJSON *object, const struct rf_job *job)
 {
@@ -59,23 +47,11 @@ static void check_is_member(const cJSON *object, const struct rf_job *job)
     ck_abort_msg("%s is no member", fault.family->name);
 }
 
-static struct rf_job *job_of(const cJSON *line)
-{
-    struct rf_job *job;
-    struct rf_error error = {0};
-    char *text = cJSON_PrintUnformatted(cJSON_GetObjectItem(line, "job"));
-    ck_assert_ptr_nonnull(text);
-    enum rf_status status = rf_job_parse(text, strlen(text), "reference", &job, &error);
-    ck_assert_msg(status == RF_OK, "%s", error.text);
-    cJSON_free(text);
-    return job;
-}
-
 static void check_line(const char *text)
 {
     cJSON *line = cJSON_Parse(text);
     ck_assert_ptr_nonnull(line);
-    struct rf_job *job = job_of(line);
+    struct rf_job *job = reference_job(line, "reference");
     members.n = 0;
     for (size_t i = 0; i < n_fault_families; i++)
         fault_families[i]->enumerate(job, models, collect, &members);
@@ -91,13 +67,8 @@ static void check_line(const char *text)
 START_TEST(members_are_the_reference_s)
 {
     size_t jobs = 0;
-    for (size_t i = 0; i < sizeof files / sizeof *files; i++) {
-        char path[MOST_PATH];
-        const char *source = getenv("RINGFETTLE_SOURCE");
-        snprintf(path, sizeof path, "%s/tests/cases/reference/%s", source != NULL ? source : ".",
-                 files[i]);
-        FILE *file = fopen(path, "r");
-        ck_assert_msg(file != NULL, "%s", path);
+    for (size_t i = 0; i < N_REFERENCE_FILES; i++) {
+        FILE *file = reference_open(i);
         char *line = NULL;
         size_t room = 0;
         for (; getline(&line, &room, file) > 0; jobs++)
@@ -120,7 +91,7 @@ static Suite *members_suite(void)
 {
     Suite *suite = suite_create("members");
     TCase *reference = tcase_create("reference");
-    tcase_add_unchecked_fixture(reference, load_models, drop_models);
+    tcase_add_unchecked_fixture(reference, load_models, unload_models);
     tcase_add_test(reference, members_are_the_reference_s);
     tcase_add_test(reference, shipped_models_have_every_row);
     suite_add_tcase(suite, reference);
@@ -129,9 +100,5 @@ static Suite *members_suite(void)
 
 int main(void)
 {
-    SRunner *runner = srunner_create(members_suite());
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(members_suite());
 }

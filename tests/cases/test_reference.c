@@ -9,47 +9,22 @@
 
 #include "diagnosis/diagnosis.h"
 
+#include "../shipped_models.h"
+#include "../suite.h"
+#include "reference.h"
+
 #include <cjson/cJSON.h>
 #include <check.h>
-#include <gsl/gsl_errno.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
-#include <string.h>
 
-enum { PATH_MOST = 4096, NAME_MOST = 256 };
+enum { NAME_MOST = 256 };
 
 static const double compared = 0.01;
 static const double tolerance = 0.01;
 
-static const char *const files[] = {"standard.ndjson", "extra.ndjson", "nolength.ndjson"};
-static const size_t jobs_in[] = {30, 25, 15};
-
-static struct rf_models *models;
-
-static void set_up(void)
-{
-    struct rf_error error;
-    gsl_set_error_handler_off();
-    ck_assert_msg(rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error) == RF_OK, "%s",
-                  error.text);
-}
-
-static void tear_down(void)
-{
-    rf_models_destroy(models);
-}
-
-static struct rf_job *job_of(const cJSON *line, const char *name)
-{
-    struct rf_job *job;
-    struct rf_error error;
-    char *text = cJSON_PrintUnformatted(cJSON_GetObjectItem(line, "job"));
-    ck_assert_ptr_nonnull(text);
-    ck_assert_msg(rf_job_parse(text, strlen(text), name, &job, &error) == RF_OK, "%s", error.text);
-    cJSON_free(text);
-    return job;
-}
+static const size_t jobs_in[N_REFERENCE_FILES] = {30, 25, 15};
 
 /* The reference's posterior of a hypothesis, 0 where it is not among its leading ones. */
 static double reference_posterior(const cJSON *posterior, const struct rf_job *job,
@@ -107,7 +82,7 @@ static bool check_job(const cJSON *line, const char *name, bool screen)
 {
     struct rf_diagnosis *diagnosis;
     struct rf_error error;
-    struct rf_job *job = job_of(line, name);
+    struct rf_job *job = reference_job(line, name);
     const cJSON *posterior = cJSON_GetObjectItem(line, "posterior");
     ck_assert_msg(diagnose(job, models, screen, &diagnosis, &error) == RF_OK, "%s", error.text);
     ck_assert_uint_eq(rf_diagnosis_hypotheses(diagnosis),
@@ -124,18 +99,14 @@ static bool check_job(const cJSON *line, const char *name, bool screen)
 
 START_TEST(posteriors_agree)
 {
-    char path[PATH_MOST], name[NAME_MOST], *text = NULL;
+    char name[NAME_MOST], *text = NULL;
     size_t room = 0, jobs = 0, differ = 0, which = (size_t)_i / 2;
     bool screen = _i % 2 == 0;
-    const char *source = getenv("RINGFETTLE_SOURCE");
-    snprintf(path, sizeof path, "%s/tests/cases/reference/%s", source != NULL ? source : ".",
-             files[which]);
-    FILE *file = fopen(path, "r");
-    ck_assert_msg(file != NULL, "%s", path);
+    FILE *file = reference_open(which);
     for (; getline(&text, &room, file) > 0; jobs++) {
         cJSON *line = cJSON_Parse(text);
         ck_assert_ptr_nonnull(line);
-        snprintf(name, sizeof name, "%s:%zu", files[which], jobs + 1);
+        snprintf(name, sizeof name, "%s:%zu", reference_files[which], jobs + 1);
         differ += !check_job(line, name, screen);
         cJSON_Delete(line);
     }
@@ -150,14 +121,9 @@ int main(void)
 {
     Suite *suite = suite_create("reference");
     TCase *tests = tcase_create("posteriors");
-    tcase_add_checked_fixture(tests, set_up, tear_down);
+    tcase_add_checked_fixture(tests, load_models, unload_models);
     tcase_set_timeout(tests, 120);
-    tcase_add_loop_test(tests, posteriors_agree, 0,
-                         2 * (int)(sizeof files / sizeof *files));
+    tcase_add_loop_test(tests, posteriors_agree, 0, 2 * N_REFERENCE_FILES);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

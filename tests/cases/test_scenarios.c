@@ -9,40 +9,20 @@
 #include "base/text.h"
 #include "diagnosis/diagnosis.h"
 
+#include "../project.h"
+#include "../shipped_models.h"
+#include "../suite.h"
+
 #include <cjson/cJSON.h>
 #include <check.h>
 #include <dirent.h>
-#include <gsl/gsl_errno.h>
 #include <math.h>
 #include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 
-enum { PATH_MOST = 4096, LEAST_SCENARIOS = 14 };
-
-static struct rf_models *models;
-
-static void set_up(void)
-{
-    struct rf_error error;
-    gsl_set_error_handler_off();
-    ck_assert_msg(rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error) == RF_OK, "%s",
-                  error.text);
-}
-
-static void tear_down(void)
-{
-    rf_models_destroy(models);
-}
+enum { LEAST_SCENARIOS = 14 };
 
 /* --- files --- */
-
-static void path_of(char path[PATH_MOST], const char *folder, const char *name)
-{
-    const char *source = getenv("RINGFETTLE_SOURCE");
-    int n = snprintf(path, PATH_MOST, "%s/%s/%s", source != NULL ? source : ".", folder, name);
-    ck_assert(n > 0 && n < PATH_MOST);
-}
 
 static bool is_json(const char *name)
 {
@@ -53,7 +33,7 @@ static bool is_json(const char *name)
 static bool exists(const char *folder, const char *name)
 {
     char path[PATH_MOST];
-    path_of(path, folder, name);
+    project_path(path, folder, name);
     FILE *file = fopen(path, "r");
     if (file != NULL)
         fclose(file);
@@ -67,7 +47,7 @@ static cJSON *read_expected(const char *name)
     char path[PATH_MOST], bytes[8192];
     struct rf_error error;
     cJSON *tree;
-    path_of(path, "tests/cases/expected", name);
+    project_path(path, "tests/cases/expected", name);
     FILE *file = fopen(path, "r");
     ck_assert_msg(file != NULL, "%s is not there", path);
     size_t length = fread(bytes, 1, sizeof bytes, file);
@@ -88,7 +68,7 @@ static struct rf_job *read_scenario(const char *name)
     struct rf_job_reader *reader;
     struct rf_job *job;
     struct rf_error error;
-    path_of(path, "scenarios", name);
+    project_path(path, "scenarios", name);
     ck_assert_msg(rf_job_reader_open(path, &reader, &error) == RF_OK, "%s", error.text);
     ck_assert_msg(rf_job_reader_next(reader, &job, &error) == RF_OK, "%s", error.text);
     ck_assert_ptr_nonnull(job);
@@ -206,7 +186,7 @@ START_TEST(scenarios_show_what_is_expected)
 {
     char path[PATH_MOST];
     size_t n = 0;
-    path_of(path, "scenarios", ".");
+    project_path(path, "scenarios", ".");
     DIR *folder = opendir(path);
     ck_assert_ptr_nonnull(folder);
     for (struct dirent *entry; (entry = readdir(folder)) != NULL;) {
@@ -223,7 +203,7 @@ END_TEST
 START_TEST(expectations_have_a_scenario)
 {
     char path[PATH_MOST];
-    path_of(path, "tests/cases/expected", ".");
+    project_path(path, "tests/cases/expected", ".");
     DIR *folder = opendir(path);
     ck_assert_ptr_nonnull(folder);
     for (struct dirent *entry; (entry = readdir(folder)) != NULL;)
@@ -237,14 +217,10 @@ int main(void)
 {
     Suite *suite = suite_create("scenarios");
     TCase *tests = tcase_create("scenarios");
-    tcase_add_checked_fixture(tests, set_up, tear_down);
+    tcase_add_checked_fixture(tests, load_models, unload_models);
     tcase_set_timeout(tests, 60);
     tcase_add_test(tests, scenarios_show_what_is_expected);
     tcase_add_test(tests, expectations_have_a_scenario);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -8,6 +8,8 @@
  * test's own, which `leave_folder` removes.
  */
 
+#include "../suite.h"
+
 #include <check.h>
 #include <cjson/cJSON.h>
 #include <stdio.h>
@@ -117,15 +119,6 @@ static inline void leave_folder(void)
     ck_assert(chdir("/") == 0);
     sprintf(command, "rm -r %s", folder);
     ck_assert_int_eq(system(command), 0);
-}
-
-static inline int run_suite(Suite *suite)
-{
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
 }
 
 #endif

@@ -13,8 +13,8 @@
  * conductors (r1 + r2)/4 everywhere. The other forms are series sums: common practice, no source.
  */
 #include "../meter.h"
+#include "../suite.h"
 
-#include <stdlib.h>
 
 enum { N = 6, SPUR = N + 2, FURTHER = N + 3 };
 
@@ -199,9 +199,5 @@ int main(void)
     tcase_add_test(cases, highest_in_the_middle);
     tcase_add_test(cases, spurs_read_higher);
     tcase_add_test(cases, links_and_leads_are_series_sums);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

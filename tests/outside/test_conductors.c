@@ -2,8 +2,9 @@
 /* Conductors against the standard and against rules of the trade. */
 #include "models/models.h"
 
+#include "../suite.h"
+
 #include <check.h>
-#include <stdlib.h>
 
 static struct rf_models *models;
 
@@ -74,9 +75,5 @@ int main(void)
     tcase_add_test(tests, a_smaller_cpc_reads_about_two_thirds_more);
     tcase_add_test(tests, half_an_ohm_is_about_seventy_metres);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

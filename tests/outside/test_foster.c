@@ -6,9 +6,9 @@
 #include "network/loops.h"
 
 #include "../rings.h"
+#include "../suite.h"
 
 #include <check.h>
-#include <stdlib.h>
 
 enum { NODES = 12, EDGES = 26, NETWORKS = 300 };
 
@@ -224,9 +224,5 @@ int main(void)
     tcase_add_test(cases, powers_are_the_sensitivities);
     tcase_add_test(cases, reciprocity);
     tcase_add_test(cases, rayleigh);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -10,9 +10,10 @@
  */
 #include "network/loops.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <math.h>
-#include <stdlib.h>
 
 static const double ohms_a_mile = 16.46, loop_ohms = 54.07, miles_found = 1.09;
 
@@ -101,9 +102,5 @@ int main(void)
     suite_add_tcase(suite, cases);
     tcase_add_test(cases, bridge_balances_where_the_handbook_found_the_earth);
     tcase_add_test(cases, balance_is_found_at_the_division_read);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -13,6 +13,7 @@
 #include "plain.h"
 
 #include "../meter.h"
+#include "../suite.h"
 
 #include <stdlib.h>
 #include <unistd.h>
@@ -449,9 +450,5 @@ int main(void)
     tcase_set_timeout(cases, 120);
     tcase_add_test(cases, every_set_up_and_family);
     tcase_add_test(cases, two_faults_at_once);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

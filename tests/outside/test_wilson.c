@@ -4,6 +4,8 @@
 
 #include <ringfettle/review.h>
 
+#include "../suite.h"
+
 #include <check.h>
 #include <gsl/gsl_cdf.h>
 #include <math.h>
@@ -67,9 +69,5 @@ int main(void)
     tcase_add_test(cases, definition);
     tcase_add_test(cases, nothing_seen);
     suite_add_tcase(suite, cases);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_ENV);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? 0 : 1;
+    return run_suite(suite);
 }

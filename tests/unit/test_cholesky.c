@@ -3,10 +3,10 @@
 #include "base/cholesky.h"
 
 #include "../rings.h"
+#include "../suite.h"
 
 #include <check.h>
 #include <gsl/gsl_linalg.h>
-#include <stdlib.h>
 
 enum { MOST = 37, STRIDE = MOST + 3 };
 
@@ -99,9 +99,5 @@ int main(void)
     tcase_add_test(cases, agrees_with_gsl);
     tcase_add_test(cases, refuses_what_is_not_positive_definite);
     tcase_add_test(cases, takes_an_empty_matrix);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -3,10 +3,11 @@
  * against its parts. The rings are invented. */
 #include "fit/expected.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <math.h>
 #include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 
 static struct rf_models *models;
@@ -124,9 +125,5 @@ int main(void)
     tcase_add_test(cases, given_the_ends);
     tcase_add_test(cases, leaves_out_what_does_not_go_together);
     tcase_add_test(cases, passes_over_what_is_over_range);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

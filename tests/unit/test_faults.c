@@ -8,6 +8,7 @@
 #include "fit/forward.h"
 
 #include "../rings.h"
+#include "../suite.h"
 
 #include <check.h>
 #include <cjson/cJSON.h>
@@ -1224,9 +1225,5 @@ static Suite *faults_suite(void)
 
 int main(void)
 {
-    SRunner *runner = srunner_create(faults_suite());
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(faults_suite());
 }

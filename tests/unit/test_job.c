@@ -1,11 +1,11 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/*
- * Reading a job: what is refused, with the whole message, and what is taken. All jobs are invented.
- * Linked with --wrap for the allocating calls, so that each can be made to fail in turn.
- */
+/* Reading a job: what is refused, with the whole message, and what is taken. All jobs are invented. */
 #include "base/text.h"
 #include "job/job.h"
 #include "job/job_write.h"
+
+#include "../failing.h"
+#include "../suite.h"
 
 #include <check.h>
 #include <cjson/cJSON.h>
@@ -663,35 +663,6 @@ START_TEST(refuses_by_name)
 }
 END_TEST
 
-void *__real_malloc(size_t size);
-void *__real_calloc(size_t n, size_t size);
-void *__real_realloc(void *old, size_t size);
-void *__wrap_malloc(size_t size);
-void *__wrap_calloc(size_t n, size_t size);
-void *__wrap_realloc(void *old, size_t size);
-
-static size_t allocations, fail_at; /* the allocation that fails, from 1; 0: none */
-
-static bool refused(void)
-{
-    return ++allocations == fail_at;
-}
-
-void *__wrap_malloc(size_t size)
-{
-    return refused() ? NULL : __real_malloc(size);
-}
-
-void *__wrap_calloc(size_t n, size_t size)
-{
-    return refused() ? NULL : __real_calloc(n, size);
-}
-
-void *__wrap_realloc(void *old, size_t size)
-{
-    return refused() ? NULL : __real_realloc(old, size);
-}
-
 static struct rf_job *read_job(const char *text)
 {
     struct rf_error error = {0};
@@ -956,8 +927,7 @@ END_TEST
 static void fail_each_allocation(const char *text, enum rf_status at_last)
 {
     enum rf_status status = RF_MEMORY;
-    cJSON_Hooks hooks = {__wrap_malloc, free}; /* cJSON's own calls are not wrapped */
-    cJSON_InitHooks(&hooks);
+    lead_cjson_here(true);
     for (size_t n = 1; n < 10000 && status == RF_MEMORY; n++) {
         struct rf_error error = {0};
         struct rf_job *job;
@@ -969,7 +939,7 @@ static void fail_each_allocation(const char *text, enum rf_status at_last)
         ck_assert(status == RF_OK || job == NULL);
         rf_job_destroy(job);
     }
-    cJSON_InitHooks(NULL);
+    lead_cjson_here(false);
     ck_assert_int_eq(status, at_last);
 }
 
@@ -999,9 +969,5 @@ int main(void)
     tcase_add_test(all, survives_failing_allocations);
     suite_add_tcase(suite, all);
 
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

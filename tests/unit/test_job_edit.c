@@ -5,6 +5,7 @@
  */
 
 #include "../job_maker.h"
+#include "../suite.h"
 
 #include "job/job_edit.h"
 #include "job/job_write.h"
@@ -243,9 +244,5 @@ int main(void)
     tcase_add_test(tests, marks_and_findings);
     tcase_add_test(tests, spacing);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -2,6 +2,8 @@
 /* Streams of jobs: documents, archives, and what is neither. All jobs are invented. */
 #include "job/job.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <stdlib.h>
 #include <string.h>
@@ -233,9 +235,5 @@ int main(void)
     tcase_add_test(all, refuses_what_is_no_file);
     suite_add_tcase(suite, all);
 
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

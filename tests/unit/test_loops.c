@@ -1,44 +1,14 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/*
- * Effective resistances of networks small enough to solve by hand. Linked with --wrap for the
- * allocating calls, to show that solving allocates nothing.
- */
+/* Effective resistances of networks small enough to solve by hand; solving allocates nothing. */
 #include "network/loops.h"
 
+#include "../failing.h"
 #include "../rings.h"
+#include "../suite.h"
 
 #include <check.h>
-#include <stdlib.h>
 
 enum { MOST = 16 };
-
-/* The linker leads every call of malloc here, and __real_malloc to the library's. */
-void *__real_malloc(size_t size);
-void *__real_calloc(size_t n, size_t size);
-void *__real_realloc(void *old, size_t size);
-void *__wrap_malloc(size_t size);
-void *__wrap_calloc(size_t n, size_t size);
-void *__wrap_realloc(void *old, size_t size);
-
-static size_t allocations;
-static size_t fail_at; /* the allocation that fails, counted from 1; 0: none */
-
-static bool refused(void)
-{
-    return ++allocations == fail_at;
-}
-void *__wrap_malloc(size_t size)
-{
-    return refused() ? NULL : __real_malloc(size);
-}
-void *__wrap_calloc(size_t n, size_t size)
-{
-    return refused() ? NULL : __real_calloc(n, size);
-}
-void *__wrap_realloc(void *old, size_t size)
-{
-    return refused() ? NULL : __real_realloc(old, size);
-}
 
 static struct loops *loops;
 
@@ -297,9 +267,5 @@ int main(void)
     tcase_add_test(cases, says_when_the_workspace_is_too_small);
     tcase_add_test(cases, solving_allocates_nothing);
     tcase_add_test(cases, survives_short_memory);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -3,6 +3,9 @@
 #include "models/models.h"
 #include "models/shipped.h"
 
+#include "../project.h"
+#include "../suite.h"
+
 #include <check.h>
 #include <math.h>
 #include <stdio.h>
@@ -237,11 +240,9 @@ END_TEST
 
 START_TEST(the_source_folder_is_what_is_shipped)
 {
-    const char *root = getenv("RINGFETTLE_SOURCE");
-    ck_assert_msg(root != NULL, "run through meson test: RINGFETTLE_SOURCE is not set");
     for (int i = 0; i < N_MODEL_FILES; i++) {
-        char path[4096], bytes[16384];
-        snprintf(path, sizeof path, "%s/models/%s", root, shipped_files[i].name);
+        char path[PATH_MOST], bytes[16384];
+        project_path(path, "models", shipped_files[i].name);
         FILE *in = fopen(path, "rb");
         ck_assert_msg(in != NULL, "%s", path);
         size_t length = fread(bytes, 1, sizeof bytes, in);
@@ -372,9 +373,5 @@ static Suite *suite(void)
 
 int main(void)
 {
-    SRunner *runner = srunner_create(suite());
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite());
 }

@@ -1,41 +1,12 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/*
- * Loading models when memory is short: each allocation of the library fails in turn. Linked with
- * --wrap for the allocating calls; those inside cJSON and the C library do not come here.
- */
+/* Loading models when memory is short: each allocation of the library fails in turn. */
 #include <ringfettle/models.h>
 
+#include "../failing.h"
+#include "../project.h"
+#include "../suite.h"
+
 #include <check.h>
-#include <stdio.h>
-#include <stdlib.h>
-
-/* The linker leads every call of malloc here, and __real_malloc to the library's. */
-void *__real_malloc(size_t size);
-void *__real_calloc(size_t n, size_t size);
-void *__real_realloc(void *old, size_t size);
-void *__wrap_malloc(size_t size);
-void *__wrap_calloc(size_t n, size_t size);
-void *__wrap_realloc(void *old, size_t size);
-
-static size_t allocations;
-static size_t fail_at; /* the allocation that fails, counted from 1; 0: none */
-
-static int refused(void)
-{
-    return ++allocations == fail_at;
-}
-void *__wrap_malloc(size_t size)
-{
-    return refused() ? NULL : __real_malloc(size);
-}
-void *__wrap_calloc(size_t n, size_t size)
-{
-    return refused() ? NULL : __real_calloc(n, size);
-}
-void *__wrap_realloc(void *old, size_t size)
-{
-    return refused() ? NULL : __real_realloc(old, size);
-}
 
 /* The status of loading from `directory` with allocation `failing` refused; *made: how many were
  * asked for. Nothing of Check's runs in between. */
@@ -73,10 +44,8 @@ END_TEST
 
 START_TEST(a_directory_when_memory_is_short)
 {
-    char directory[4096];
-    const char *root = getenv("RINGFETTLE_SOURCE");
-    ck_assert_msg(root != NULL, "run through meson test: RINGFETTLE_SOURCE is not set");
-    snprintf(directory, sizeof directory, "%s/models", root);
+    char directory[PATH_MOST];
+    project_path(directory, ".", "models");
     assert_each_failure_is_answered(directory);
 }
 END_TEST
@@ -88,9 +57,5 @@ int main(void)
     tcase_add_test(tests, shipped_models_when_memory_is_short);
     tcase_add_test(tests, a_directory_when_memory_is_short);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -10,6 +10,8 @@
 #include "report/review_report.h"
 #include "review/tally.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <math.h>
 #include <stdio.h>
@@ -349,9 +351,5 @@ int main(void)
     tcase_add_test(score, line_through_json);
     tcase_add_test(score, learned_by_hand);
     suite_add_tcase(suite, score);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_ENV);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? 0 : 1;
+    return run_suite(suite);
 }

@@ -11,6 +11,8 @@
 #include "review/tally.h"
 #include "simulation/simulation.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <gsl/gsl_errno.h>
 #include <stdio.h>
@@ -157,9 +159,5 @@ int main(void)
     tcase_set_timeout(cases, 120);
     tcase_add_test(cases, learned_priors_serve_jobs_held_back);
     suite_add_tcase(suite, cases);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_ENV);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? 0 : 1;
+    return run_suite(suite);
 }

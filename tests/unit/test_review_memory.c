@@ -1,11 +1,13 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /*
  * A review when memory is short: each allocation of the library fails in turn, from opening a
- * folder to joining parts and learning. Linked with --wrap for the allocating calls; those inside
- * cJSON and the C library do not come here. The jobs are invented.
+ * folder to joining parts and learning. The jobs are invented.
  */
 #include "report/review_report.h"
 #include "review/pipeline.h"
+
+#include "../failing.h"
+#include "../suite.h"
 
 #include <check.h>
 #include <gsl/gsl_errno.h>
@@ -13,34 +15,6 @@
 #include <stdlib.h>
 #include <string.h>
 #include <unistd.h>
-
-/* The linker leads every call of malloc here, and __real_malloc to the library's. */
-void *__real_malloc(size_t size);
-void *__real_calloc(size_t n, size_t size);
-void *__real_realloc(void *old, size_t size);
-void *__wrap_malloc(size_t size);
-void *__wrap_calloc(size_t n, size_t size);
-void *__wrap_realloc(void *old, size_t size);
-
-static size_t allocations;
-static size_t fail_at; /* the allocation that fails, counted from 1; 0: none */
-
-static int refused(void)
-{
-    return ++allocations == fail_at;
-}
-void *__wrap_malloc(size_t size)
-{
-    return refused() ? NULL : __real_malloc(size);
-}
-void *__wrap_calloc(size_t n, size_t size)
-{
-    return refused() ? NULL : __real_calloc(n, size);
-}
-void *__wrap_realloc(void *old, size_t size)
-{
-    return refused() ? NULL : __real_realloc(old, size);
-}
 
 static char folder[] = "/tmp/ringfettle-memory-XXXXXX";
 static struct rf_models *models;
@@ -196,9 +170,5 @@ int main(void)
     tcase_add_test(tests, reviewing);
     tcase_add_test(tests, joining_and_learning);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_ENV);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? 0 : 1;
+    return run_suite(suite);
 }

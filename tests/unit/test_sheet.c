@@ -2,6 +2,8 @@
 /* Sheets: round trips over made-up jobs, spelling rules, and every refusal's message. */
 
 #include "../job_maker.h"
+#include "../project.h"
+#include "../suite.h"
 
 #include "job/job_parse.h"
 #include "job/sheet.h"
@@ -79,10 +81,8 @@ END_TEST
 
 static char *read_file(const char *name, size_t *length)
 {
-    char path[512];
-    const char *source = getenv("RINGFETTLE_SOURCE");
-    ck_assert_msg(source != NULL, "RINGFETTLE_SOURCE names the project");
-    snprintf(path, sizeof path, "%s/tests/cases/sheets/%s", source, name);
+    char path[PATH_MOST];
+    project_path(path, "tests/cases/sheets", name);
     FILE *file = fopen(path, "rb");
     ck_assert_msg(file != NULL, "%s", path);
     char *bytes = calloc(1, 200000);
@@ -229,9 +229,5 @@ int main(void)
     tcase_add_test(tests, refusals);
     tcase_add_test(tests, spellings);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -7,39 +7,12 @@
 #include "job/job_edit.h"
 #include "job/sheet.h"
 
+#include "../failing.h"
+#include "../suite.h"
+
 #include <cjson/cJSON.h>
 #include <check.h>
-#include <stdlib.h>
 #include <string.h>
-
-void *__real_malloc(size_t size);
-void *__real_calloc(size_t n, size_t size);
-void *__real_realloc(void *old, size_t size);
-void *__wrap_malloc(size_t size);
-void *__wrap_calloc(size_t n, size_t size);
-void *__wrap_realloc(void *old, size_t size);
-
-static size_t allocations, fail_at; /* the allocation that fails, from 1; 0: none */
-
-static bool refused(void)
-{
-    return ++allocations == fail_at;
-}
-
-void *__wrap_malloc(size_t size)
-{
-    return refused() ? NULL : __real_malloc(size);
-}
-
-void *__wrap_calloc(size_t n, size_t size)
-{
-    return refused() ? NULL : __real_calloc(n, size);
-}
-
-void *__wrap_realloc(void *old, size_t size)
-{
-    return refused() ? NULL : __real_realloc(old, size);
-}
 
 static const char sheet[] =
     "job;\"\"\"a\\u00e9\"\"\"\nx_a;\"[1,{\"\"b\"\":2}]\"\nr1;0,6;OL\nopened;P1;board\nfound;joint\n"
@@ -109,8 +82,7 @@ static enum rf_status change_json(struct text *result)
 static void fail_each(action *act, enum rf_status at_last)
 {
     struct text plenty = {0};
-    cJSON_Hooks hooks = {__wrap_malloc, free}; /* cJSON's own calls are not wrapped */
-    cJSON_InitHooks(&hooks);
+    lead_cjson_here(true);
     fail_at = 0;
     ck_assert_int_eq(act(&plenty), at_last);
     for (size_t n = 1;; n++) {
@@ -129,7 +101,7 @@ static void fail_each(action *act, enum rf_status at_last)
             break;
     }
     text_finish(&plenty);
-    cJSON_InitHooks(NULL);
+    lead_cjson_here(false);
 }
 
 START_TEST(short_of_memory)
@@ -148,9 +120,5 @@ int main(void)
     tcase_set_timeout(tests, 120);
     tcase_add_test(tests, short_of_memory);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

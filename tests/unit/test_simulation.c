@@ -10,6 +10,8 @@
 #include "fit/likelihood.h"
 #include "simulation/simulation.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <gsl/gsl_errno.h>
 #include <gsl/gsl_statistics.h>
@@ -587,9 +589,5 @@ int main(void)
     tcase_add_test(tests, looks);
     tcase_add_test(tests, random_rings);
     suite_add_tcase(suite, tests);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_ENV);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -1,6 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "base/text.h"
 
+#include "../suite.h"
+
 #include <check.h>
 #include <stdlib.h>
 #include <string.h>
@@ -141,9 +143,5 @@ int main(void)
     tcase_add_test(all, finds_the_nearest);
     suite_add_tcase(suite, all);
 
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

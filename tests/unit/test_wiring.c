@@ -3,9 +3,9 @@
 #include "network/wiring.h"
 
 #include "../meter.h"
+#include "../suite.h"
 
 #include <check.h>
-#include <stdlib.h>
 
 enum { MOST = 128 };
 
@@ -375,9 +375,5 @@ int main(void)
     tcase_add_test(cases, another_cable);
     tcase_add_test(cases, an_end_moves);
     tcase_add_test(cases, a_copy_is_its_own);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }

@@ -2,8 +2,9 @@
 /* Filling to a narrow screen, and cells of a table. */
 #include "report/wrap.h"
 
+#include "../suite.h"
+
 #include <check.h>
-#include <stdlib.h>
 #include <string.h>
 
 static struct text out;
@@ -125,9 +126,5 @@ int main(void)
     tcase_add_test(cases, shows_no_control_characters);
     tcase_add_test(cases, no_break_spaces_hold);
     tcase_add_test(cases, cells_fit);
-    SRunner *runner = srunner_create(suite);
-    srunner_run_all(runner, CK_NORMAL);
-    int failed = srunner_ntests_failed(runner);
-    srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return run_suite(suite);
 }
