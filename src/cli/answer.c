@@ -188,14 +188,7 @@ static enum rf_status answer(const struct invocation *invocation, const struct r
 
 static enum rf_class run(const struct invocation *invocation)
 {
-    struct rf_models *models = NULL;
-    struct rf_error error;
-    enum rf_status status = load_models(invocation, &models);
-    if (status != RF_OK)
-        return rf_status_class(status);
-    status = answer(invocation, models, &error);
-    rf_models_destroy(models);
-    return status == RF_OK ? RF_CLASS_DONE : complain_of(&error);
+    return run_with_models(invocation, answer);
 }
 
 const struct command command_answer = {

@@ -111,6 +111,18 @@ enum rf_status load_models_and_rates(const struct invocation *invocation, const 
     return status == RF_OK ? load_at(invocation, rates, models) : status;
 }
 
+enum rf_class run_with_models(const struct invocation *invocation, models_callback *act)
+{
+    struct rf_models *models = NULL;
+    struct rf_error error;
+    enum rf_status status = load_models(invocation, &models);
+    if (status != RF_OK)
+        return rf_status_class(status);
+    status = act(invocation, models, &error);
+    rf_models_destroy(models);
+    return status == RF_OK ? RF_CLASS_DONE : complain_of(&error);
+}
+
 /* --- jobs --- */
 
 /* Whether the jobs behind this one may still be worth a try. */

@@ -60,6 +60,11 @@ enum rf_status load_models(const struct invocation *invocation, struct rf_models
 enum rf_status load_models_and_rates(const struct invocation *invocation, const char *usual,
                                      struct rf_models **models);
 
+/* Runs `act` with the models asked for, complains of what failed, and answers its class. */
+typedef enum rf_status models_callback(const struct invocation *invocation,
+                                       const struct rf_models *models, struct rf_error *error);
+enum rf_class run_with_models(const struct invocation *invocation, models_callback *act);
+
 /* A line on standard error: "ringfettle: …". */
 void complain(const char *format, ...) RF_PRINTF(1, 2);
 /* The same for a failed call, whose class it answers. */

@@ -161,20 +161,20 @@ static enum rf_status expect(const struct invocation *invocation, const struct r
     return status;
 }
 
+static enum rf_status expect_of_file(const struct invocation *invocation,
+                                     const struct rf_models *models, struct rf_error *error)
+{
+    struct rf_job *job = NULL;
+    enum rf_status status = read_one_job(invocation->operands[0], &job, error);
+    if (status == RF_OK)
+        status = expect(invocation, job, models, error);
+    rf_job_destroy(job);
+    return status;
+}
+
 static enum rf_class run(const struct invocation *invocation)
 {
-    struct rf_models *models = NULL;
-    struct rf_job *job = NULL;
-    struct rf_error error;
-    enum rf_status status = load_models(invocation, &models);
-    if (status != RF_OK)
-        return rf_status_class(status);
-    status = read_one_job(invocation->operands[0], &job, &error);
-    if (status == RF_OK)
-        status = expect(invocation, job, models, &error);
-    rf_job_destroy(job);
-    rf_models_destroy(models);
-    return status == RF_OK ? RF_CLASS_DONE : complain_of(&error);
+    return run_with_models(invocation, expect_of_file);
 }
 
 const struct command command_expect = {

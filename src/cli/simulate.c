@@ -184,14 +184,7 @@ static enum rf_status simulate_all(const struct invocation *invocation,
 
 static enum rf_class run(const struct invocation *invocation)
 {
-    struct rf_models *models = NULL;
-    struct rf_error error;
-    enum rf_status status = load_models(invocation, &models);
-    if (status != RF_OK)
-        return rf_status_class(status);
-    status = simulate_all(invocation, models, &error);
-    rf_models_destroy(models);
-    return status == RF_OK ? RF_CLASS_DONE : complain_of(&error);
+    return run_with_models(invocation, simulate_all);
 }
 
 const struct command command_simulate = {
