@@ -2,70 +2,30 @@
 #include "report/report.h"
 
 #include "advice/advice.h"
+#include "report/json_write.h"
 
-#include <cjson/cJSON.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 
-/*
- * The format ringfettle-diagnosis/1, object by object. `failed` of the writer stays true once
- * memory was short; further additions do nothing, and the caller looks once at the end.
- */
+/* The format ringfettle-diagnosis/1. */
 struct writer {
+    struct json_writer json;
     const struct rf_diagnosis *diagnosis;
-    bool failed;
 };
 
 enum { OHM_DIGITS = 6 };
-
-/* --- adding --- */
-
-/* Takes the item over, whatever happens. */
-static void add(struct writer *writer, cJSON *object, const char *key, cJSON *item)
-{
-    if (item != NULL && object != NULL && cJSON_AddItemToObject(object, key, item))
-        return;
-    cJSON_Delete(item);
-    writer->failed = true;
-}
-
-static void append(struct writer *writer, cJSON *array, cJSON *item)
-{
-    if (item != NULL && array != NULL && cJSON_AddItemToArray(array, item))
-        return;
-    cJSON_Delete(item);
-    writer->failed = true;
-}
-
-static void add_number(struct writer *writer, cJSON *object, const char *key, double number)
-{
-    add(writer, object, key, cJSON_CreateNumber(number));
-}
-
-static void add_words(struct writer *writer, cJSON *object, const char *key, const char *words)
-{
-    add(writer, object, key, cJSON_CreateString(words));
-}
-
-/* An array, the object's; NULL once memory was short. */
-static cJSON *add_list(struct writer *writer, cJSON *object, const char *key)
-{
-    cJSON *list = cJSON_CreateArray();
-    add(writer, object, key, list);
-    return writer->failed ? NULL : list;
-}
 
 /* Ω, to as many digits as say something; NAN is over range. */
 static void add_ohms(struct writer *writer, cJSON *object, const char *key, double ohms)
 {
     if (isnan(ohms)) {
-        add_words(writer, object, key, "open");
+        json_add_words(&writer->json, object, key, "open");
         return;
     }
     char digits[32];
     snprintf(digits, sizeof digits, "%.*g", OHM_DIGITS, ohms);
-    add_number(writer, object, key, strtod(digits, NULL));
+    json_add_number(&writer->json, object, key, strtod(digits, NULL));
 }
 
 /* --- faults, findings, places --- */
@@ -79,7 +39,7 @@ static void add_estimate(struct writer *writer, cJSON *object, const char *ohms,
     add_ohms(writer, range, "value", estimate->value);
     add_ohms(writer, range, "low", estimate->low);
     add_ohms(writer, range, "high", estimate->high);
-    add(writer, object, estimate->metres ? metres : ohms, range);
+    json_add(&writer->json, object, estimate->metres ? metres : ohms, range);
 }
 
 static cJSON *fault_object(struct writer *writer, const struct ranked *ranked)
@@ -89,39 +49,39 @@ static cJSON *fault_object(struct writer *writer, const struct ranked *ranked)
     const struct rf_job *job = writer->diagnosis->job;
     cJSON *object = cJSON_CreateObject();
     const struct fault *first = hypothesis->n_faults > 0 ? &hypothesis->faults[0] : &none;
-    add(writer, object, "fault", fault_to_json(first, job));
+    json_add(&writer->json, object, "fault", fault_to_json(first, job));
     if (hypothesis->n_faults > 1)
-        add(writer, object, "also", fault_to_json(&hypothesis->faults[1], job));
-    add_number(writer, object, "confidence", ranked->confidence);
+        json_add(&writer->json, object, "also", fault_to_json(&hypothesis->faults[1], job));
+    json_add_number(&writer->json, object, "confidence", ranked->confidence);
     if (hypothesis->n_faults > 0)
         add_estimate(writer, object, "ohms", "metres", &ranked->estimates[0]);
     if (hypothesis->n_faults > 1)
         add_estimate(writer, object, "also_ohms", "also_metres", &ranked->estimates[1]);
-    add_words(writer, object, "text", ranked->words);
+    json_add_words(&writer->json, object, "text", ranked->words);
     return object;
 }
 
 static void add_faults(struct writer *writer, cJSON *root)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "faults");
+    cJSON *list = json_add_list(&writer->json, root, "faults");
     for (size_t i = 0; i < diagnosis->n_ranked; i++)
-        append(writer, list, fault_object(writer, &diagnosis->ranked[i]));
+        json_append(&writer->json, list, fault_object(writer, &diagnosis->ranked[i]));
 }
 
 static void add_findings(struct writer *writer, cJSON *root)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "findings");
+    cJSON *list = json_add_list(&writer->json, root, "findings");
     for (size_t i = 0; i < diagnosis->n_findings; i++) {
         const struct finding *finding = &diagnosis->findings[i];
         cJSON *object = cJSON_CreateObject();
-        add_words(writer, object, "text", finding->words);
-        add_number(writer, object, "confidence", finding->confidence);
-        cJSON *members = add_list(writer, object, "faults");
+        json_add_words(&writer->json, object, "text", finding->words);
+        json_add_number(&writer->json, object, "confidence", finding->confidence);
+        cJSON *members = json_add_list(&writer->json, object, "faults");
         for (size_t j = 0; j < finding->n_members; j++)
-            append(writer, members, cJSON_CreateNumber((double)finding->members[j]));
-        append(writer, list, object);
+            json_append(&writer->json, members, cJSON_CreateNumber((double)finding->members[j]));
+        json_append(&writer->json, list, object);
     }
 }
 
@@ -129,18 +89,20 @@ static void add_findings(struct writer *writer, cJSON *root)
 static void add_look(struct writer *writer, cJSON *object, const struct look *look)
 {
     const struct rf_job *job = writer->diagnosis->job;
-    add_words(writer, object, "look", look->kind == LOOK_CHECK ? "check" : "open");
+    json_add_words(&writer->json, object, "look", look->kind == LOOK_CHECK ? "check" : "open");
     switch (look->where) {
     case LOOK_AT_BOARD:
-        add_words(writer, object, "place", "board");
+        json_add_words(&writer->json, object, "place", "board");
         break;
     case LOOK_AT_PLACE:
-        add_words(writer, object, "place", job->places[look->index].id);
+        json_add_words(&writer->json, object, "place", job->places[look->index].id);
         break;
     case LOOK_IN_RUN: {
-        cJSON *run = add_list(writer, object, "run");
-        append(writer, run, cJSON_CreateString(job->places[run_near_end(job, look->index)].id));
-        append(writer, run, cJSON_CreateString(job->places[run_far_end(look->index)].id));
+        cJSON *run = json_add_list(&writer->json, object, "run");
+        json_append(&writer->json, run,
+                    cJSON_CreateString(job->places[run_near_end(job, look->index)].id));
+        json_append(&writer->json, run,
+                    cJSON_CreateString(job->places[run_far_end(look->index)].id));
         break;
     }
     }
@@ -149,12 +111,12 @@ static void add_look(struct writer *writer, cJSON *object, const struct look *lo
 static void add_places(struct writer *writer, cJSON *root)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "places");
+    cJSON *list = json_add_list(&writer->json, root, "places");
     for (size_t i = 0; i < diagnosis->n_places; i++) {
         cJSON *object = cJSON_CreateObject();
         add_look(writer, object, &diagnosis->places[i].look);
-        add_number(writer, object, "chance", diagnosis->places[i].chance);
-        append(writer, list, object);
+        json_add_number(&writer->json, object, "chance", diagnosis->places[i].chance);
+        json_append(&writer->json, list, object);
     }
 }
 
@@ -166,8 +128,8 @@ static cJSON *reading_object(struct writer *writer, size_t i)
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
     const struct reading *reading = &diagnosis->job->readings[i];
     cJSON *object = cJSON_CreateObject();
-    add_words(writer, object, "setup", setups[reading->setup].name);
-    add_words(writer, object, "place", reading_key(diagnosis->job, reading));
+    json_add_words(&writer->json, object, "setup", setups[reading->setup].name);
+    json_add_words(&writer->json, object, "place", reading_key(diagnosis->job, reading));
     add_ohms(writer, object, "read", reading->open ? NAN : reading->ohms);
     if (diagnosis->n_ranked > 0)
         add_ohms(writer, object, "fitted", diagnosis->ranked[0].fitted[i]);
@@ -177,19 +139,19 @@ static cJSON *reading_object(struct writer *writer, size_t i)
 static void add_suspects(struct writer *writer, cJSON *root)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "suspect");
+    cJSON *list = json_add_list(&writer->json, root, "suspect");
     for (size_t i = 0; i < diagnosis->n_suspects; i++)
-        append(writer, list, reading_object(writer, diagnosis->suspects[i].reading));
+        json_append(&writer->json, list, reading_object(writer, diagnosis->suspects[i].reading));
 }
 
 static void add_readings(struct writer *writer, cJSON *root)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "readings");
+    cJSON *list = json_add_list(&writer->json, root, "readings");
     for (size_t i = 0; i < diagnosis->job->n_readings; i++) {
         cJSON *object = reading_object(writer, i);
         add_ohms(writer, object, "sound", diagnosis->sound[i]);
-        append(writer, list, object);
+        json_append(&writer->json, list, object);
     }
 }
 
@@ -200,7 +162,7 @@ static cJSON *blind_object(struct writer *writer, const struct blind_spot *blind
     cJSON *object = fault_to_json(&blind->example, writer->diagnosis->job);
     for (size_t i = 0; i < sizeof where / sizeof where[0]; i++)
         cJSON_DeleteItemFromObjectCaseSensitive(object, where[i]);
-    add_words(writer, object, "text", blind->words);
+    json_add_words(&writer->json, object, "text", blind->words);
     return object;
 }
 
@@ -218,31 +180,32 @@ static void add_lift(struct writer *writer, cJSON *object, const struct rf_advic
         if (lift->blind != blind)
             continue;
         cJSON *read = cJSON_CreateObject();
-        add_words(writer, read, "setup", setups[lift->read.setup].name);
-        add_words(writer, read, "place", measurement_key(writer->diagnosis->job, &lift->read));
-        add_number(writer, read, "minutes", lift->minutes);
-        add_words(writer, read, "text", lift->words);
-        add(writer, object, "lift", read);
+        json_add_words(&writer->json, read, "setup", setups[lift->read.setup].name);
+        json_add_words(&writer->json, read, "place",
+                       measurement_key(writer->diagnosis->job, &lift->read));
+        json_add_number(&writer->json, read, "minutes", lift->minutes);
+        json_add_words(&writer->json, read, "text", lift->words);
+        json_add(&writer->json, object, "lift", read);
     }
 }
 
 static void add_blind(struct writer *writer, cJSON *root, const struct rf_advice *advice)
 {
     const struct rf_diagnosis *diagnosis = writer->diagnosis;
-    cJSON *list = add_list(writer, root, "blind");
+    cJSON *list = json_add_list(&writer->json, root, "blind");
     for (size_t i = 0; i < diagnosis->n_blind; i++) {
         cJSON *object = blind_object(writer, &diagnosis->blind[i]);
         add_lift(writer, object, advice, i);
-        append(writer, list, object);
+        json_append(&writer->json, list, object);
     }
 }
 
 static void add_misfit(struct writer *writer, cJSON *root)
 {
     cJSON *object = cJSON_CreateObject();
-    add_number(writer, object, "p", writer->diagnosis->misfit.p);
-    add(writer, object, "flag", cJSON_CreateBool(writer->diagnosis->misfit.flag));
-    add(writer, root, "misfit", object);
+    json_add_number(&writer->json, object, "p", writer->diagnosis->misfit.p);
+    json_add(&writer->json, object, "flag", cJSON_CreateBool(writer->diagnosis->misfit.flag));
+    json_add(&writer->json, root, "misfit", object);
 }
 
 /* --- the plan --- */
@@ -251,37 +214,38 @@ static cJSON *plan_object(struct writer *writer, const struct plan *plan)
 {
     cJSON *object = cJSON_CreateObject();
     bool read = plan->action == ACTION_READ;
-    add_words(writer, object, "action", read ? "read" : "look");
+    json_add_words(&writer->json, object, "action", read ? "read" : "look");
     if (read) {
-        add_words(writer, object, "setup", setups[plan->setup].name);
-        cJSON *places = add_list(writer, object, "places");
+        json_add_words(&writer->json, object, "setup", setups[plan->setup].name);
+        cJSON *places = json_add_list(&writer->json, object, "places");
         for (size_t i = 0; i < plan->n_reads; i++)
-            append(writer, places,
-                   cJSON_CreateString(measurement_key(writer->diagnosis->job, &plan->reads[i])));
+            json_append(
+                &writer->json, places,
+                cJSON_CreateString(measurement_key(writer->diagnosis->job, &plan->reads[i])));
     } else {
         add_look(writer, object, &plan->look);
     }
-    add_number(writer, object, "minutes", plan->minutes);
+    json_add_number(&writer->json, object, "minutes", plan->minutes);
     if (read)
-        add_number(writer, object, "saves", plan->saves);
-    add_words(writer, object, "text", plan->words);
+        json_add_number(&writer->json, object, "saves", plan->saves);
+    json_add_words(&writer->json, object, "text", plan->words);
     return object;
 }
 
 /* Nothing where nothing is worth doing. */
 static void add_next(struct writer *writer, cJSON *root, const struct rf_advice *advice)
 {
-    cJSON *list = add_list(writer, root, "next");
+    cJSON *list = json_add_list(&writer->json, root, "next");
     for (size_t i = 0; i < advice->n_plans && !advice->stop; i++)
-        append(writer, list, plan_object(writer, &advice->plans[i]));
+        json_append(&writer->json, list, plan_object(writer, &advice->plans[i]));
 }
 
 static void add_minutes(struct writer *writer, cJSON *root, const struct rf_advice *advice)
 {
     cJSON *object = cJSON_CreateObject();
-    add_number(writer, object, "look_now", advice->look_now);
-    add_number(writer, object, "measure_first", advice->measure_first);
-    add(writer, root, "expected_minutes", object);
+    json_add_number(&writer->json, object, "look_now", advice->look_now);
+    json_add_number(&writer->json, object, "measure_first", advice->measure_first);
+    json_add(&writer->json, root, "expected_minutes", object);
 }
 
 void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *advice,
@@ -289,10 +253,10 @@ void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
 {
     struct writer writer = {.diagnosis = diagnosis};
     cJSON *root = cJSON_CreateObject();
-    add_words(&writer, root, "format", "ringfettle-diagnosis/1");
-    add_words(&writer, root, "job", rf_job_name(diagnosis->job));
-    add_words(&writer, root, "models", rf_models_name(diagnosis->models));
-    add_number(&writer, root, "hypotheses", (double)diagnosis->n_hypotheses);
+    json_add_words(&writer.json, root, "format", "ringfettle-diagnosis/1");
+    json_add_words(&writer.json, root, "job", rf_job_name(diagnosis->job));
+    json_add_words(&writer.json, root, "models", rf_models_name(diagnosis->models));
+    json_add_number(&writer.json, root, "hypotheses", (double)diagnosis->n_hypotheses);
     add_misfit(&writer, root);
     add_faults(&writer, root);
     add_findings(&writer, root);
@@ -304,12 +268,5 @@ void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
         add_next(&writer, root, advice);
         add_minutes(&writer, root, advice);
     }
-
-    char *line = writer.failed ? NULL : cJSON_PrintUnformatted(root);
-    if (line != NULL)
-        text_addf(out, "%s\n", line);
-    else
-        out->failed = true;
-    cJSON_free(line);
-    cJSON_Delete(root);
+    json_end_line(&writer.json, root, out);
 }

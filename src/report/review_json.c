@@ -1,57 +1,23 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "report/review_report.h"
 
-#include <cjson/cJSON.h>
+#include "report/json_write.h"
+
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 
-/* The format ringfettle-review/1. As in json.c, `failed` stays true once memory was short. */
+/* The format ringfettle-review/1. */
 struct writer {
+    struct json_writer json;
     const struct rf_review *review;
-    bool failed;
 };
 
 static const double level = 0.9; /* of the intervals */
 
-static void add(struct writer *writer, cJSON *object, const char *key, cJSON *item)
-{
-    if (item != NULL && object != NULL && cJSON_AddItemToObject(object, key, item))
-        return;
-    cJSON_Delete(item);
-    writer->failed = true;
-}
-
-static void append(struct writer *writer, cJSON *array, cJSON *item)
-{
-    if (item != NULL && array != NULL && cJSON_AddItemToArray(array, item))
-        return;
-    cJSON_Delete(item);
-    writer->failed = true;
-}
-
-static cJSON *add_object(struct writer *writer, cJSON *object, const char *key)
-{
-    cJSON *made = cJSON_CreateObject();
-    add(writer, object, key, made);
-    return writer->failed ? NULL : made;
-}
-
-static cJSON *add_list(struct writer *writer, cJSON *object, const char *key)
-{
-    cJSON *made = cJSON_CreateArray();
-    add(writer, object, key, made);
-    return writer->failed ? NULL : made;
-}
-
 static void add_count(struct writer *writer, cJSON *object, const char *key, uint64_t count)
 {
-    add(writer, object, key, cJSON_CreateNumber((double)count));
-}
-
-static void add_words(struct writer *writer, cJSON *object, const char *key, const char *words)
-{
-    add(writer, object, key, cJSON_CreateString(words));
+    json_add(&writer->json, object, key, cJSON_CreateNumber((double)count));
 }
 
 /* Six digits behind the point: what is beyond them says nothing. */
@@ -59,58 +25,58 @@ static void add_share(struct writer *writer, cJSON *object, const char *key, dou
 {
     char digits[48];
     snprintf(digits, sizeof digits, "%.6f", share);
-    add(writer, object, key, cJSON_CreateNumber(strtod(digits, NULL)));
+    json_add(&writer->json, object, key, cJSON_CreateNumber(strtod(digits, NULL)));
 }
 
 static void add_defects(struct writer *writer, cJSON *root)
 {
-    cJSON *list = add_list(writer, root, "defects");
+    cJSON *list = json_add_list(&writer->json, root, "defects");
     for (size_t family = 0; family < n_sorts(); family++)
         for (size_t conductor = 0; conductor < N_CONDUCTOR_KINDS; conductor++) {
             uint64_t jobs = writer->review->defects[family][conductor];
             if (jobs == 0)
                 continue;
             cJSON *row = cJSON_CreateObject();
-            add_words(writer, row, "family", sort_name(family));
+            json_add_words(&writer->json, row, "family", sort_name(family));
             if (conductor > 0)
-                add_words(writer, row, "conductor", conductor_kind_names[conductor]);
+                json_add_words(&writer->json, row, "conductor", conductor_kind_names[conductor]);
             add_count(writer, row, "jobs", jobs);
-            append(writer, list, row);
+            json_append(&writer->json, list, row);
         }
 }
 
 static void add_testing(struct writer *writer, cJSON *root)
 {
-    cJSON *list = add_list(writer, root, "testing_mistakes");
+    cJSON *list = json_add_list(&writer->json, root, "testing_mistakes");
     for (size_t family = 0; family < n_sorts(); family++) {
         if (writer->review->testing[family] == 0)
             continue;
         cJSON *row = cJSON_CreateObject();
-        add_words(writer, row, "family", sort_name(family));
+        json_add_words(&writer->json, row, "family", sort_name(family));
         add_count(writer, row, "jobs", writer->review->testing[family]);
-        append(writer, list, row);
+        json_append(&writer->json, list, row);
     }
 }
 
 static void add_counts(struct writer *writer, cJSON *root)
 {
     const struct rf_review *review = writer->review;
-    add(writer, root, "complete", cJSON_CreateBool(!review->stopped));
+    json_add(&writer->json, root, "complete", cJSON_CreateBool(!review->stopped));
     add_count(writer, root, "jobs", review->jobs);
     add_count(writer, root, "refused", review->refused);
     add_count(writer, root, "failed", review->failed);
     add_count(writer, root, "unread", review->unread);
-    cJSON *verdicts = add_object(writer, root, "verdicts");
+    cJSON *verdicts = json_add_object(&writer->json, root, "verdicts");
     for (size_t i = 0; i < N_VERDICTS; i++)
         add_count(writer, verdicts, verdict_names[i], review->verdicts[i]);
     add_defects(writer, root);
-    cJSON *disagree = add_object(writer, root, "record_disagrees");
+    cJSON *disagree = json_add_object(&writer->json, root, "record_disagrees");
     add_count(writer, disagree, "jobs", review->disagree);
     add_count(writer, disagree, "found", review->disagree_found);
     add_count(writer, disagree, "wiring", review->disagree_wiring);
     add_count(writer, disagree, "lengths", review->disagree_lengths);
     add_testing(writer, root);
-    cJSON *readings = add_object(writer, root, "readings");
+    cJSON *readings = json_add_object(&writer->json, root, "readings");
     add_count(writer, readings, "taken", review->readings);
     add_count(writer, readings, "written_off", review->written_off);
     add_count(writer, readings, "jobs", review->jobs_written_off);
@@ -118,7 +84,7 @@ static void add_counts(struct writer *writer, cJSON *root)
 
 static void add_calibration(struct writer *writer, cJSON *score)
 {
-    cJSON *list = add_list(writer, score, "calibration");
+    cJSON *list = json_add_list(&writer->json, score, "calibration");
     for (size_t i = 0; i < CALIBRATION_BINS; i++) {
         const struct calibration_bin *bin = &writer->review->score.calibration[i];
         if (bin->jobs == 0)
@@ -135,23 +101,23 @@ static void add_calibration(struct writer *writer, cJSON *score)
         add_share(writer, row, "share", (double)bin->right / (double)bin->jobs);
         add_share(writer, row, "low", low);
         add_share(writer, row, "high", high);
-        append(writer, list, row);
+        json_append(&writer->json, list, row);
     }
 }
 
 static void add_confusion(struct writer *writer, cJSON *score)
 {
-    cJSON *list = add_list(writer, score, "confusion");
+    cJSON *list = json_add_list(&writer->json, score, "confusion");
     for (size_t found = 0; found < n_sorts(); found++)
         for (size_t first = 0; first < n_sorts(); first++) {
             uint64_t jobs = writer->review->score.confusion[found][first];
             if (jobs == 0)
                 continue;
             cJSON *row = cJSON_CreateObject();
-            add_words(writer, row, "found", sort_name(found));
-            add_words(writer, row, "first", sort_name(first));
+            json_add_words(&writer->json, row, "found", sort_name(found));
+            json_add_words(&writer->json, row, "first", sort_name(first));
             add_count(writer, row, "jobs", jobs);
-            append(writer, list, row);
+            json_append(&writer->json, list, row);
         }
 }
 
@@ -160,7 +126,7 @@ static void add_looks(struct writer *writer, cJSON *score)
 {
     static const char *const keys[N_LOOK_BINS] = {"0", "1", "2", "3_to_5", "6_and_more", "never"};
     const struct scorecard *of = &writer->review->score;
-    cJSON *object = add_object(writer, score, "places_before_find");
+    cJSON *object = json_add_object(&writer->json, score, "places_before_find");
     double jobs = (double)of->looked;
     add_count(writer, object, "jobs", of->looked);
     if (of->looked == 0)
@@ -173,7 +139,7 @@ static void add_looks(struct writer *writer, cJSON *score)
 static void add_score(struct writer *writer, cJSON *root)
 {
     const struct scorecard *score = &writer->review->score;
-    cJSON *object = add_object(writer, root, "scorecard");
+    cJSON *object = json_add_object(&writer->json, root, "scorecard");
     add_count(writer, object, "confirmed", score->confirmed);
     add_count(writer, object, "first", score->first);
     add_count(writer, object, "first_three", score->first_three);
@@ -190,17 +156,17 @@ static void add_score(struct writer *writer, cJSON *root)
 
 static void add_worst(struct writer *writer, cJSON *root)
 {
-    cJSON *list = add_list(writer, root, "worrying");
+    cJSON *list = json_add_list(&writer->json, root, "worrying");
     for (size_t i = 0; i < writer->review->n_worst; i++) {
         const struct review_line *line = &writer->review->worst[i];
         cJSON *object = cJSON_CreateObject();
-        add_words(writer, object, "job", line->job);
-        add_words(writer, object, "verdict", verdict_names[line->verdict]);
-        add_words(writer, object, "text", line->words);
+        json_add_words(&writer->json, object, "job", line->job);
+        json_add_words(&writer->json, object, "verdict", verdict_names[line->verdict]);
+        json_add_words(&writer->json, object, "text", line->words);
         add_share(writer, object, "confidence", (double)line->confidence / PARTS);
         add_share(writer, object, "danger", (double)line->danger / PARTS);
-        add_words(writer, object, "found", line->found.known ? "otherwise" : "nothing");
-        append(writer, list, object);
+        json_add_words(&writer->json, object, "found", line->found.known ? "otherwise" : "nothing");
+        json_append(&writer->json, list, object);
     }
 }
 
@@ -209,17 +175,11 @@ void report_review_json(const struct rf_review *review, const char *models, cons
 {
     struct writer writer = {.review = review};
     cJSON *root = cJSON_CreateObject();
-    add_words(&writer, root, "format", "ringfettle-review/1");
-    add_words(&writer, root, "models", models);
-    add_words(&writer, root, "rates", rates);
+    json_add_words(&writer.json, root, "format", "ringfettle-review/1");
+    json_add_words(&writer.json, root, "models", models);
+    json_add_words(&writer.json, root, "rates", rates);
     add_counts(&writer, root);
     add_score(&writer, root);
     add_worst(&writer, root);
-    char *line = writer.failed ? NULL : cJSON_PrintUnformatted(root);
-    if (line != NULL)
-        text_addf(out, "%s\n", line);
-    else
-        out->failed = true;
-    cJSON_free(line);
-    cJSON_Delete(root);
+    json_end_line(&writer.json, root, out);
 }
