@@ -52,9 +52,8 @@ struct long_reader;
 
 /* `options` and `file` must outlive the reader. RF_SYNTAX, RF_REFUSED (no such columns), RF_IO,
  * RF_MEMORY. */
-enum rf_status long_reader_open(FILE *file, const char *source,
-                                const struct long_options *options, struct long_reader **reader,
-                                struct rf_error *error);
+enum rf_status long_reader_open(FILE *file, const char *source, const struct long_options *options,
+                                struct long_reader **reader, struct rf_error *error);
 /* The next job that is good, the caller's; RF_OK with *job NULL at the end. RF_IO, RF_MEMORY. */
 enum rf_status long_reader_next(struct long_reader *reader, struct rf_job **job,
                                 struct rf_error *error);
