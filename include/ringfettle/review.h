@@ -48,8 +48,9 @@ RF_API double rf_review_mean_log_posterior(const struct rf_review *review);
  * faults.json: the priors of `models` count as `weight` (above 0) jobs seen before. On RF_OK
  * *text is the caller's, to free. RF_REFUSED with fewer than 20 confirmed jobs; RF_USAGE; RF_MEMORY.
  */
-RF_API enum rf_status rf_review_learn(const struct rf_review *review, const struct rf_models *models,
-                                      double weight, char **text, struct rf_error *error);
+RF_API enum rf_status rf_review_learn(const struct rf_review *review,
+                                      const struct rf_models *models, double weight, char **text,
+                                      struct rf_error *error);
 
 /*
  * Wilson's interval of a share of which `right` of `n` were seen, at a confidence `level` (0 to 1,

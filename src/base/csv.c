@@ -172,8 +172,7 @@ static bool is_blank(char byte)
 }
 
 /* Appends the text of the cell `raw` and a terminator; says what is wrong, or NULL. */
-static const char *unwrap(struct text *texts, const char *raw, size_t length,
-                          struct csv_cell *cell)
+static const char *unwrap(struct text *texts, const char *raw, size_t length, struct csv_cell *cell)
 {
     while (length > 0 && is_blank(raw[0])) {
         raw++;
@@ -203,8 +202,7 @@ static const char *unwrap(struct text *texts, const char *raw, size_t length,
 }
 
 /* Where the cell that begins at raw[from] ends, at a separator or the row's end. */
-static size_t cell_end(const struct csv_reader *reader, const char *raw, size_t from,
-                       size_t length)
+static size_t cell_end(const struct csv_reader *reader, const char *raw, size_t from, size_t length)
 {
     size_t i = from;
     while (i < length && is_blank(raw[i]) && raw[i] != reader->separator)
@@ -257,8 +255,8 @@ static enum rf_status split(struct csv_reader *reader, const char *raw, size_t l
     return RF_OK;
 }
 
-static enum rf_status refuse_bytes(const struct csv_reader *reader, const char *raw,
-                                   size_t length, struct rf_error *error)
+static enum rf_status refuse_bytes(const struct csv_reader *reader, const char *raw, size_t length,
+                                   struct rf_error *error)
 {
     size_t bad = 0;
     if (!text_is_utf8(raw, length, &bad))
@@ -329,11 +327,11 @@ enum rf_status csv_next(struct csv_reader *reader, const struct csv_row **row,
         return status;
     enum rf_status well_formed = RF_OK;
     if (length > reader->limit || !closed)
-        well_formed = fail(error, RF_SYNTAX, "%s: row %zu: found %s", reader->source,
-                           reader->next_number,
-                           !closed ? "a quote that is never closed; needs the quote that ends the "
-                                     "cell, or doubled quotes inside it"
-                                   : "more bytes than a row may have; needs a row a line");
+        well_formed =
+            fail(error, RF_SYNTAX, "%s: row %zu: found %s", reader->source, reader->next_number,
+                 !closed ? "a quote that is never closed; needs the quote that ends the "
+                           "cell, or doubled quotes inside it"
+                         : "more bytes than a row may have; needs a row a line");
     if (well_formed == RF_OK)
         well_formed = refuse_bytes(reader, reader->bytes + reader->at, length, error);
     if (well_formed == RF_OK)

@@ -29,7 +29,7 @@ struct csv_row {
     size_t number; /* from 1, as a spreadsheet counts: empty rows count, lines inside quotes not */
     size_t line;   /* from 1, of the text, where the row begins */
     struct csv_cell *cells;
-    size_t n_cells; /* at least 1; an empty line is one empty cell */
+    size_t n_cells;  /* at least 1; an empty line is one empty cell */
     const char *raw; /* as written, without its end */
     size_t raw_length;
     const char *end; /* "\n", "\r\n", "\r", or "" at the end of the text */

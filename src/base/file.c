@@ -61,8 +61,7 @@ static enum rf_status check_kind(const char *path, bool pipe_too, struct rf_erro
     return RF_OK;
 }
 
-enum rf_status file_read(const char *path, size_t most, struct text *bytes,
-                         struct rf_error *error)
+enum rf_status file_read(const char *path, size_t most, struct text *bytes, struct rf_error *error)
 {
     if (strcmp(path, "-") == 0)
         return read_all(STDIN_FILENO, "standard input", most, bytes, error);
@@ -147,13 +146,14 @@ static enum rf_status lock(struct file_hold *hold, struct rf_error *error)
         if (is_current(hold))
             return RF_OK;
     }
-    return fail(error, RF_BUSY, "%s: somebody else is writing this file; try again when they are "
+    return fail(error, RF_BUSY,
+                "%s: somebody else is writing this file; try again when they are "
                 "done",
                 hold->name);
 }
 
-enum rf_status file_hold(const char *path, size_t most, struct file_hold **hold,
-                         struct text *bytes, struct rf_error *error)
+enum rf_status file_hold(const char *path, size_t most, struct file_hold **hold, struct text *bytes,
+                         struct rf_error *error)
 {
     struct file_hold *made = NULL;
     *hold = NULL;
@@ -246,7 +246,8 @@ static char *path_of_new(const char *path)
 {
     const char *slash = strrchr(path, '/');
     struct text whole = {0};
-    text_append(&whole, slash != NULL ? path : "./", slash != NULL ? (size_t)(slash + 1 - path) : 2);
+    text_append(&whole, slash != NULL ? path : "./",
+                slash != NULL ? (size_t)(slash + 1 - path) : 2);
     char *folder = whole.failed ? NULL : realpath(whole.bytes, NULL);
     int reason = whole.failed ? ENOMEM : errno;
     text_clear(&whole);

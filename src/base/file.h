@@ -19,16 +19,15 @@ struct file_hold;
 
 /* Appends the bytes of a file, or of standard input ("-"); at most `most`. RF_IO, RF_REFUSED (no
  * file, a folder, a device), RF_LIMIT, RF_MEMORY. */
-enum rf_status file_read(const char *path, size_t most, struct text *bytes,
-                         struct rf_error *error);
+enum rf_status file_read(const char *path, size_t most, struct text *bytes, struct rf_error *error);
 
 /*
  * Holds a regular file that may be written and appends its bytes; symbolic links are followed.
  * On RF_OK the caller releases *hold; else it is NULL. RF_BUSY: somebody else holds it. As
  * file_read else.
  */
-enum rf_status file_hold(const char *path, size_t most, struct file_hold **hold,
-                         struct text *bytes, struct rf_error *error);
+enum rf_status file_hold(const char *path, size_t most, struct file_hold **hold, struct text *bytes,
+                         struct rf_error *error);
 
 /* Makes and holds a file that is not there yet. RF_REFUSED: it is there; RF_IO, RF_MEMORY. */
 enum rf_status file_create(const char *path, const struct text *bytes, struct file_hold **hold,

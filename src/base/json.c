@@ -329,8 +329,8 @@ struct json_at json_member(const struct json_at *at, const char *key)
         .source = at->source,
         .origin = at->origin,
         .key = key,
-        .value = cJSON_IsObject(at->value) ? cJSON_GetObjectItemCaseSensitive(at->value, key)
-                                           : NULL,
+        .value =
+            cJSON_IsObject(at->value) ? cJSON_GetObjectItemCaseSensitive(at->value, key) : NULL,
     };
 }
 

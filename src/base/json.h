@@ -35,11 +35,11 @@ struct json_origin {
 };
 
 struct json_at {
-    const struct json_at *parent; /* NULL: the document itself */
-    const char *source;           /* the file's name, for messages */
-    const char *key;              /* of a member; NULL: an element, or the document */
-    size_t index;                 /* of an element, from 0 */
-    const cJSON *value;           /* NULL: not there */
+    const struct json_at *parent;     /* NULL: the document itself */
+    const char *source;               /* the file's name, for messages */
+    const char *key;                  /* of a member; NULL: an element, or the document */
+    size_t index;                     /* of an element, from 0 */
+    const cJSON *value;               /* NULL: not there */
     const struct json_origin *origin; /* NULL: places are named by their path */
 };
 
@@ -78,8 +78,8 @@ struct json_at json_child(const struct json_at *at, size_t index, const cJSON *v
  * `point` is a struct json_at, `i` a size_t. */
 #define JSON_EACH(at, child, i)                                                                    \
     for (size_t i = 0, i##_more = 1; i##_more == 1; i##_more = 0)                                  \
-        for (struct json_at child = json_child((at), 0, json_first((at)));                         \
-             child.value != NULL; i++, child = json_child((at), i, child.value->next))
+        for (struct json_at child = json_child((at), 0, json_first((at))); child.value != NULL;    \
+             i++, child = json_child((at), i, child.value->next))
 const cJSON *json_first(const struct json_at *at); /* NULL: no children, or no container */
 size_t json_count(const struct json_at *at);       /* children; 0 where it is no container */
 
@@ -113,8 +113,7 @@ enum rf_status json_choice(const struct json_at *at, const char *const names[], 
 enum rf_status json_fail(const struct json_at *at, struct rf_error *error, enum rf_status status,
                          const char *format, ...) RF_PRINTF(4, 5);
 /* "source: path: found …; needs …", or "source: path: missing; needs …". */
-enum rf_status json_fail_found(const struct json_at *at, struct rf_error *error,
-                               const char *needs);
+enum rf_status json_fail_found(const struct json_at *at, struct rf_error *error, const char *needs);
 
 /* A value in a few words, for a message ("\"kitchen\"", "0.4", "a list"); strings shortened. */
 void json_describe(const cJSON *value, struct text *out);

@@ -16,9 +16,9 @@ struct span {
 struct item {
     struct span key; /* with its quotes; empty: an element */
     struct span value;
-    struct span gap;  /* between the comma or bracket before it and it */
-    size_t comma;     /* the comma or bracket before it */
-    size_t end;       /* the comma or bracket behind it */
+    struct span gap; /* between the comma or bracket before it and it */
+    size_t comma;    /* the comma or bracket before it */
+    size_t end;      /* the comma or bracket behind it */
     size_t index;
     bool found;
 };
@@ -165,8 +165,7 @@ static enum rf_status document_at(const struct text *json, size_t *open, struct 
 {
     size_t at = json->length >= 3 && memcmp(json->bytes, "\xEF\xBB\xBF", 3) == 0 ? 3 : 0;
     *open = skip_space(json->bytes, at);
-    return json->bytes[*open] == '{' ? RF_OK
-                                     : fail(error, RF_REFUSED, "found no object to change");
+    return json->bytes[*open] == '{' ? RF_OK : fail(error, RF_REFUSED, "found no object to change");
 }
 
 /* Goes down the path as far as it leads: *depth keys of it are there, `item` is the last of them
@@ -186,8 +185,8 @@ static enum rf_status descend(const struct text *json, const char *const path[],
         if (*depth < n) {
             *open = next.value.from;
             if (json->bytes[*open] != '{')
-                status = fail(error, RF_REFUSED, "%s: found no object; needs one",
-                              path[*depth - 1]);
+                status =
+                    fail(error, RF_REFUSED, "%s: found no object; needs one", path[*depth - 1]);
         }
     }
     return status;
@@ -214,8 +213,8 @@ enum rf_status json_edit_set(struct text *json, const char *const path[], size_t
         text_add(&made, value);
         for (size_t i = depth + 1; i < n; i++)
             text_add(&made, "}");
-        status = made.failed ? fail_memory(error)
-                             : insert(json, open, path[depth], made.bytes, error);
+        status =
+            made.failed ? fail_memory(error) : insert(json, open, path[depth], made.bytes, error);
     }
     text_finish(&made);
     return status;
@@ -239,8 +238,7 @@ enum rf_status json_edit_append(struct text *json, const char *const path[], siz
         status = replace(json, item.value, &made, error);
     } else {
         text_addf(&made, always_list ? "[%s]" : "%s", value);
-        status = made.failed ? fail_memory(error)
-                             : json_edit_set(json, path, n, made.bytes, error);
+        status = made.failed ? fail_memory(error) : json_edit_set(json, path, n, made.bytes, error);
     }
     text_finish(&made);
     return status;

@@ -20,7 +20,7 @@ struct text {
 void text_append(struct text *text, const char *bytes, size_t length);
 void text_add(struct text *text, const char *terminated);
 void text_addf(struct text *text, const char *format, ...) RF_PRINTF(2, 3);
-void text_clear(struct text *text); /* empty again, keeps its memory */
+void text_clear(struct text *text);  /* empty again, keeps its memory */
 void text_finish(struct text *text); /* frees; takes NULL and zeroed */
 
 /* A copy on the heap, NULL when memory is short; the caller frees. */

@@ -123,9 +123,8 @@ static enum rf_status open_table(const char *path, FILE **file, struct rf_error 
     if (stat(path, &about) == 0 && !S_ISREG(about.st_mode) && !S_ISFIFO(about.st_mode))
         return fail(error, RF_REFUSED, "%s: found no file; needs a table", path);
     *file = fopen(path, "r");
-    return *file != NULL
-               ? RF_OK
-               : fail(error, RF_IO, "%s: cannot be read: %s", path, strerror(errno));
+    return *file != NULL ? RF_OK
+                         : fail(error, RF_IO, "%s: cannot be read: %s", path, strerror(errno));
 }
 
 enum rf_class convert_long(const struct invocation *invocation, const struct sheet_style *style)

@@ -27,7 +27,8 @@ static enum rf_status write_page(struct context *in, const struct rf_diagnosis *
                     "diagnose: --page: found more than one job; needs one, since a page is of one");
     enum rf_status status = report_page(diagnosis, advice, &page, error);
     if (status == RF_OK)
-        status = strcmp(in->page, "-") == 0 ? put(&page, error) : file_write(in->page, &page, error);
+        status =
+            strcmp(in->page, "-") == 0 ? put(&page, error) : file_write(in->page, &page, error);
     text_finish(&page);
     return status;
 }
@@ -93,8 +94,9 @@ const struct command command_diagnose = {
     .options =
         {
             {"json", NULL, "one JSON object a job, each on a line, instead of text"},
-            {"page", "FILE", "write a page to look at, HTML that needs no network, to FILE (- is "
-                             "standard output) instead of text"},
+            {"page", "FILE",
+             "write a page to look at, HTML that needs no network, to FILE (- is "
+             "standard output) instead of text"},
             {"no-plan", NULL, "leave out what to do next: faster, for archives"},
             {"rates", "NAME",
              "how often what goes wrong: consulted, for a job somebody looks into; archive, mostly "

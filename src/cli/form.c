@@ -48,8 +48,7 @@ static int find_spur(const cJSON *spurs, const char *id)
 {
     int i = 0;
     const cJSON *spur;
-    cJSON_ArrayForEach(spur, spurs)
-    {
+    cJSON_ArrayForEach(spur, spurs) {
         if (strcmp(cJSON_GetObjectItemCaseSensitive(spur, "id")->valuestring, id) == 0)
             break;
         i++;
@@ -129,8 +128,7 @@ enum rf_status form_job(const struct form *form, struct rf_job **job, struct rf_
 }
 
 /* JSON has no empty cells; a set-up to be read stands there as an empty object. */
-static enum rf_status write_json(const struct form *form, struct text *out,
-                                 struct rf_error *error)
+static enum rf_status write_json(const struct form *form, struct text *out, struct rf_error *error)
 {
     cJSON *copy = cJSON_Duplicate(form->document, true);
     cJSON *readings = copy != NULL ? form_object(copy, "readings") : NULL;
@@ -145,10 +143,9 @@ static enum rf_status write_json(const struct form *form, struct text *out,
 enum rf_status form_save(struct form *form, struct rf_error *error)
 {
     struct text out = {0};
-    enum rf_status status =
-        form->as_json ? write_json(form, &out, error)
-                      : sheet_write(form->document, &form->style, form->setups, form->n_setups,
-                                    &out, error);
+    enum rf_status status = form->as_json ? write_json(form, &out, error)
+                                          : sheet_write(form->document, &form->style, form->setups,
+                                                        form->n_setups, &out, error);
     if (status == RF_OK)
         status = form->hold == NULL ? file_create(form->path, &out, &form->hold, error)
                                     : file_replace(form->hold, &out, error);

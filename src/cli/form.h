@@ -4,8 +4,8 @@
 
 /* A job that is being begun: its document, and the file it goes to. */
 
-#include "cli/command.h"
 #include "base/file.h"
+#include "cli/command.h"
 #include "job/job.h"
 #include "job/sheet.h"
 

@@ -14,9 +14,8 @@
 #include <unistd.h>
 
 static const struct command *const commands[] = {
-    &command_diagnose, &command_check, &command_expect, &command_simulate, &command_answer,
-    &command_record,   &command_convert, &command_new,
-    &command_review,
+    &command_diagnose, &command_check,   &command_expect, &command_simulate, &command_answer,
+    &command_record,   &command_convert, &command_new,    &command_review,
 };
 
 enum {

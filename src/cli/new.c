@@ -21,8 +21,7 @@ static enum rf_status read_points(const char *text, size_t *n, struct rf_error *
     char *end;
     unsigned long number = strtoul(text, &end, 10);
     if (text[0] < '0' || text[0] > '9' || *end != '\0' || number < 1 || number > JOB_MAX_POINTS)
-        return fail(error, RF_USAGE, "new: --points: found %s; needs a number from 1 to 200",
-                    text);
+        return fail(error, RF_USAGE, "new: --points: found %s; needs a number from 1 to 200", text);
     *n = (size_t)number;
     return RF_OK;
 }
@@ -37,8 +36,8 @@ static enum rf_status begin(const struct invocation *invocation, struct form *fo
         cJSON_AddStringToObject(form->document, "format", "ringfettle-job/1") == NULL)
         return fail_memory(error);
     form->n_points = USUAL_POINTS;
-    enum rf_status status = form_choose_setups(
-        form, list != NULL ? list : "end_to_end,cross_ln,cross_le", error);
+    enum rf_status status =
+        form_choose_setups(form, list != NULL ? list : "end_to_end,cross_ln,cross_le", error);
     if (status != RF_OK)
         return status;
     return points != NULL ? read_points(points, &form->n_points, error) : RF_OK;
@@ -55,8 +54,7 @@ static enum rf_status fill(const struct invocation *invocation, struct form *for
         status = form_save(form, error);
     if (status != RF_OK || !asks)
         return status;
-    status = rf_models_load(option_value(invocation, "models"), RF_RATES_CONSULTED, &models,
-                            error);
+    status = rf_models_load(option_value(invocation, "models"), RF_RATES_CONSULTED, &models, error);
     if (status == RF_OK)
         status = form_ask(form, models, points_known, error);
     rf_models_destroy(models);
@@ -75,7 +73,8 @@ static enum rf_class run(const struct invocation *invocation)
         form.style.decimal = '.';
     form.as_json = ends_in(form.path, ".json");
     if (access(form.path, F_OK) == 0)
-        return complain_usage(invocation->command, "%s is there already; needs the name of a new "
+        return complain_usage(invocation->command,
+                              "%s is there already; needs the name of a new "
                               "file",
                               form.path);
     enum rf_status status = begin(invocation, &form, &error);

@@ -351,10 +351,10 @@ static enum rf_status refuse_together(const struct invocation *invocation, struc
 {
     static const char *const of_jobs[] = {"csv", "page", "rates", "threads"};
     for (size_t i = 0; i < invocation->n_operands; i++)
-        if (option_value(invocation, "page") != NULL &&
-            strcmp(invocation->operands[i], "-") == 0)
-            return fail(error, RF_USAGE, "review: --page: found - among the paths; needs files or "
-                                         "folders, since jobs are read a second time");
+        if (option_value(invocation, "page") != NULL && strcmp(invocation->operands[i], "-") == 0)
+            return fail(error, RF_USAGE,
+                        "review: --page: found - among the paths; needs files or "
+                        "folders, since jobs are read a second time");
     if (option_value(invocation, "weight") != NULL && option_value(invocation, "learn") == NULL)
         return fail(error, RF_USAGE, "review: --weight goes with --learn");
     for (size_t i = 0; i < sizeof of_jobs / sizeof of_jobs[0]; i++)
@@ -427,8 +427,9 @@ const struct command command_review = {
         {
             {"json", NULL, "one diagnosis a line as JSON, and the summary as the last line"},
             {"csv", "FILE", "write a table of the jobs to FILE besides"},
-            {"page", "DIR", "write pages to look at into DIR: index.html, and one for each of the "
-                            "most worrying jobs"},
+            {"page", "DIR",
+             "write pages to look at into DIR: index.html, and one for each of the "
+             "most worrying jobs"},
             {"learn", "FILE",
              "write fault priors learned from the jobs that say what was found, at least 20, to "
              "FILE, a faults.json for --models"},

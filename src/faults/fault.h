@@ -85,7 +85,7 @@ typedef bool fault_callback(void *context, const struct fault *fault);
 enum danger {
     DANGER_NONE,
     DANGER_CPC_BROKEN,
-    DANGER_LINE_ON_CPC,   /* changed over, or in contact */
+    DANGER_LINE_ON_CPC, /* changed over, or in contact */
     DANGER_LIVES_SHORTED,
     DANGER_REVERSED,      /* line and neutral changed over: a switch or fuse left in neutral */
     DANGER_RING_BROKEN,   /* half the ring carries all, on a 32 A device */
@@ -178,9 +178,8 @@ struct cJSON *fault_to_json(const struct fault *fault, const struct rf_job *job)
 /* The families, one file each. */
 extern const struct fault_family fault_family_none, fault_family_break, fault_family_joint,
     fault_family_contact, fault_family_switched_off, fault_family_load,
-    fault_family_interconnection, fault_family_spur, fault_family_reversal,
-    fault_family_transposed, fault_family_short, fault_family_parallel, fault_family_size,
-    fault_family_wrong_leg, fault_family_not_crossed, fault_family_bad_link,
-    fault_family_not_nulled;
+    fault_family_interconnection, fault_family_spur, fault_family_reversal, fault_family_transposed,
+    fault_family_short, fault_family_parallel, fault_family_size, fault_family_wrong_leg,
+    fault_family_not_crossed, fault_family_bad_link, fault_family_not_nulled;
 
 #endif

@@ -43,7 +43,7 @@ static enum rf_status read_two_places(const struct json_at *at, const struct rf_
                                       size_t places[2], struct rf_error *error)
 {
     enum rf_status status = json_array(at, 2, 2, "two places in ring order", error);
-    JSON_EACH (at, element, i) {
+    JSON_EACH(at, element, i) {
         if (status == RF_OK)
             status = read_place(&element, job, &places[i], error);
     }
@@ -189,7 +189,7 @@ static enum rf_status read_points(const struct json_at *at, const struct reading
     const struct rf_job *job = of->job;
     enum rf_status status =
         json_array(at, 1, CHAIN_MAX, "1 to 3 points, in order away from the ring", error);
-    JSON_EACH (at, element, i) {
+    JSON_EACH(at, element, i) {
         if (status == RF_OK)
             status = read_place(&element, job, &fault->chain[i], error);
     }

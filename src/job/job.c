@@ -81,8 +81,7 @@ size_t job_find_run(const struct rf_job *job, size_t one, size_t other)
 
 const char *reading_key(const struct rf_job *job, const struct reading *reading)
 {
-    return reading->spot == SPOT_POINT ? job->places[reading->place].id
-                                       : spot_keys[reading->spot];
+    return reading->spot == SPOT_POINT ? job->places[reading->place].id : spot_keys[reading->spot];
 }
 
 /* --- lists of places --- */

@@ -53,8 +53,7 @@ static size_t find_mark(const cJSON *list, const char *place)
 {
     size_t i = 0;
     const cJSON *mark;
-    cJSON_ArrayForEach(mark, list)
-    {
+    cJSON_ArrayForEach(mark, list) {
         if (cJSON_IsString(mark) && strcmp(mark->valuestring, place) == 0)
             return i;
         i++;
@@ -169,9 +168,8 @@ static enum rf_status edit_json(struct text *json, const struct job_change *chan
 
 /* --- both --- */
 
-static enum rf_status apply(struct text *bytes, const char *source,
-                            const struct job_change *change, const char *time,
-                            const struct rf_job *job, struct rf_error *error)
+static enum rf_status apply(struct text *bytes, const char *source, const struct job_change *change,
+                            const char *time, const struct rf_job *job, struct rf_error *error)
 {
     cJSON *entry = NULL;
     const cJSON *old = find_old(job->document, change);
@@ -180,15 +178,15 @@ static enum rf_status apply(struct text *bytes, const char *source,
         return refuse_missing(change, source, error);
     const cJSON *history = member(job->document, history_key);
     if (old != NULL && history != NULL && !cJSON_IsArray(history))
-        return fail(error, RF_REFUSED, "%s: %s: found something of your own; needs a list to keep "
+        return fail(error, RF_REFUSED,
+                    "%s: %s: found something of your own; needs a list to keep "
                     "what is replaced in",
                     source, history_key);
     if (old != NULL && (entry = make_entry(change, old, time)) == NULL)
         return fail_memory(error);
-    enum rf_status status =
-        job_bytes_are_sheet(bytes)
-            ? sheet_edit(bytes, source, change, job->document, entry, error)
-            : edit_json(bytes, change, job->document, entry, error);
+    enum rf_status status = job_bytes_are_sheet(bytes)
+                                ? sheet_edit(bytes, source, change, job->document, entry, error)
+                                : edit_json(bytes, change, job->document, entry, error);
     cJSON_Delete(entry);
     return status;
 }

@@ -15,8 +15,8 @@ enum change_what { CHANGE_READING, CHANGE_OPENED, CHANGE_CHECKED, CHANGE_FOUND }
 struct job_change {
     enum change_how how;
     enum change_what what;
-    size_t setup;      /* of a reading */
-    const char *place; /* its key: a point's id, "board", "l" …; of a mark, the place */
+    size_t setup;              /* of a reading */
+    const char *place;         /* its key: a point's id, "board", "l" …; of a mark, the place */
     const char *const *values; /* readings as JSON texts: 0.40, "open"; none to remove */
     size_t n_values;
     const char *found; /* the object, as JSON text */

@@ -33,9 +33,8 @@ enum rf_status job_fail_no_point(const struct json_at *at, const struct rf_job *
     }
     text_add(&text, "no such point; the ring has ");
     job_list_places(job, false, &text);
-    enum rf_status status = text.failed
-                                ? fail_memory(error)
-                                : json_fail(at, error, RF_REFUSED, "%s", text.bytes);
+    enum rf_status status =
+        text.failed ? fail_memory(error) : json_fail(at, error, RF_REFUSED, "%s", text.bytes);
     text_finish(&text);
     return status;
 }
@@ -160,8 +159,8 @@ enum rf_status job_from_document(cJSON *document, const struct json_origin *orig
     return status;
 }
 
-enum rf_status job_parse(const char *text, size_t length, const char *source,
-                         enum json_lines lines, struct rf_job **job, struct rf_error *error)
+enum rf_status job_parse(const char *text, size_t length, const char *source, enum json_lines lines,
+                         struct rf_job **job, struct rf_error *error)
 {
     cJSON *document;
     *job = NULL;
@@ -172,8 +171,8 @@ enum rf_status job_parse(const char *text, size_t length, const char *source,
     return status == RF_OK ? job_from_document(document, NULL, source, 1, job, error) : status;
 }
 
-enum rf_status rf_job_parse(const char *text, size_t length, const char *name,
-                            struct rf_job **job, struct rf_error *error)
+enum rf_status rf_job_parse(const char *text, size_t length, const char *name, struct rf_job **job,
+                            struct rf_error *error)
 {
     return job_parse(text, length, name != NULL ? name : "job", JSON_DOCUMENT, job, error);
 }

@@ -9,8 +9,8 @@
 #include "job/job.h"
 
 /* rf_job_parse, with the way positions in the text are named. */
-enum rf_status job_parse(const char *text, size_t length, const char *source,
-                         enum json_lines lines, struct rf_job **job, struct rf_error *error);
+enum rf_status job_parse(const char *text, size_t length, const char *source, enum json_lines lines,
+                         struct rf_job **job, struct rf_error *error);
 
 /*
  * A job from a document that another format's reader made; `origin` names its places in messages
@@ -24,8 +24,8 @@ enum rf_status job_from_document(cJSON *document, const struct json_origin *orig
 enum rf_status job_parse_ring(const struct json_at *ring, struct rf_job *job,
                               struct rf_error *error);
 /* `least`: how many there must be. Where that is none, `readings` may be missing. */
-enum rf_status job_parse_readings(const struct json_at *readings, size_t least,
-                                  struct rf_job *job, struct rf_error *error);
+enum rf_status job_parse_readings(const struct json_at *readings, size_t least, struct rf_job *job,
+                                  struct rf_error *error);
 /* `access`, `opened`, `checked`. */
 enum rf_status job_parse_looks(const struct json_at *document, struct rf_job *job,
                                struct rf_error *error);

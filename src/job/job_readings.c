@@ -33,9 +33,8 @@ static enum rf_status fail_spot(const struct json_at *at, const struct setup *se
     struct text text = {0};
     text_addf(&text, "not read in %s; needs ", setup->name);
     list_spots(setup, &text);
-    enum rf_status status = text.failed
-                                ? fail_memory(error)
-                                : json_fail(at, error, RF_REFUSED, "%s", text.bytes);
+    enum rf_status status =
+        text.failed ? fail_memory(error) : json_fail(at, error, RF_REFUSED, "%s", text.bytes);
     text_finish(&text);
     return status;
 }
@@ -146,8 +145,8 @@ static size_t count_values(const struct json_at *readings)
     return n < JOB_MAX_READINGS ? n : JOB_MAX_READINGS;
 }
 
-enum rf_status job_parse_readings(const struct json_at *readings, size_t least,
-                                  struct rf_job *job, struct rf_error *error)
+enum rf_status job_parse_readings(const struct json_at *readings, size_t least, struct rf_job *job,
+                                  struct rf_error *error)
 {
     const char *names[N_SETUPS];
     for (size_t i = 0; i < N_SETUPS; i++)
@@ -202,8 +201,8 @@ static enum rf_status parse_access(const struct json_at *at, double *reach_minut
 }
 
 /* The point of that id; the ends are places of the ring but no points. */
-static enum rf_status find_point(const struct json_at *at, const char *id,
-                                 const struct rf_job *job, size_t *place, struct rf_error *error)
+static enum rf_status find_point(const struct json_at *at, const char *id, const struct rf_job *job,
+                                 size_t *place, struct rf_error *error)
 {
     *place = job_find_place(job, id);
     if (*place == job->n_places)

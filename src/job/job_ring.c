@@ -75,8 +75,8 @@ static enum rf_status parse_id(const struct json_at *point, struct rf_job *job, 
     if (has_control_character(id))
         return json_fail_found(&at, error, "an id without control characters");
     if (is_reserved(id))
-        return json_fail_found(
-            &at, error, "another id: out, in, board, highest, l, n and e are reserved");
+        return json_fail_found(&at, error,
+                               "another id: out, in, board, highest, l, n and e are reserved");
     for (size_t i = 0; i < place; i++)
         if (job->places[i].id != NULL && strcmp(job->places[i].id, id) == 0)
             return json_fail_found(&at, error, "an id that no other point has");
@@ -225,8 +225,8 @@ static enum rf_status parse_numbers(const struct json_at *ring, struct rf_job *j
     if (status == RF_OK)
         status = parse_sizes(ring, &job->live_mm2, &job->cpc_mm2, error);
     if (status == RF_OK)
-        status = parse_optional(&temperature, -40.0, 90.0, "°C from -40 to 90",
-                                &job->temperature_c, error);
+        status = parse_optional(&temperature, -40.0, 90.0, "°C from -40 to 90", &job->temperature_c,
+                                error);
     if (status == RF_OK)
         status = parse_optional(&accuracy, DBL_MIN, 2.0, "a number above 0 and at most 2",
                                 &job->length_accuracy, error);

@@ -51,7 +51,7 @@ struct rf_job_reader {
     bool finished;
     struct line line, ahead;
     size_t lines_read;
-    uint64_t bytes; /* read from the file */
+    uint64_t bytes;  /* read from the file */
     size_t from, to; /* of the block, what is not used yet */
     char block[BLOCK];
 };
@@ -240,8 +240,8 @@ static enum rf_status next_in_document(struct rf_job_reader *reader, struct rf_j
     reader->finished = true;
     enum rf_status status = read_document(reader, &document, error);
     if (status == RF_OK)
-        status = reader->format->parse(document.bytes, document.length, reader->path,
-                                       JSON_DOCUMENT, job, error);
+        status = reader->format->parse(document.bytes, document.length, reader->path, JSON_DOCUMENT,
+                                       job, error);
     text_finish(&document);
     return status;
 }

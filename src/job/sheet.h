@@ -36,8 +36,7 @@ void sheet_origin_destroy(struct json_origin *origin); /* takes NULL */
 
 /* A job out of a sheet, as rf_job_parse; `lines` is for the stream's table of formats, and unused. */
 enum rf_status sheet_job_parse(const char *bytes, size_t length, const char *source,
-                               enum json_lines lines, struct rf_job **job,
-                               struct rf_error *error);
+                               enum json_lines lines, struct rf_job **job, struct rf_error *error);
 
 /*
  * Appends the document of a job (one that the job reader accepts, or has no readings yet) as a

@@ -12,8 +12,8 @@
 #include <string.h>
 
 /* Sets a cell, the row lengthened as needed. */
-static enum rf_status set_cell(struct sheet_grid *grid, size_t row, size_t column,
-                               const char *text, struct rf_error *error)
+static enum rf_status set_cell(struct sheet_grid *grid, size_t row, size_t column, const char *text,
+                               struct rf_error *error)
 {
     struct sheet_row *in = grid->rows + row;
     if (column >= in->n_cells) {
@@ -53,9 +53,9 @@ static enum rf_status insert_row(struct sheet_grid *grid, size_t at, struct rf_e
     grid->rows = rows;
     grid->capacity = grid->n_rows + 1;
     /* Ends in a line as the others do; the last row of a file may have had none. */
-    const char *end = rows[grid->head].end[0] != '\0'    ? rows[grid->head].end
-                      : grid->head > 0 ? rows[grid->head - 1].end
-                                       : "\n";
+    const char *end = rows[grid->head].end[0] != '\0' ? rows[grid->head].end
+                      : grid->head > 0                ? rows[grid->head - 1].end
+                                                      : "\n";
     struct sheet_row row = {.end = text_duplicate(end)};
     bool good = row.end != NULL;
     if (good && at > 0 && rows[at - 1].end[0] == '\0') {
@@ -251,8 +251,7 @@ static enum rf_status put_found(struct sheet_grid *grid, const cJSON *found, con
                                 struct rf_error *error)
 {
     enum rf_status status = RF_OK;
-    for (const cJSON *field = found->child; field != NULL && status == RF_OK;
-         field = field->next) {
+    for (const cJSON *field = found->child; field != NULL && status == RF_OK; field = field->next) {
         struct text key = {0}, cell = {0};
         size_t row, column = 1;
         if (cJSON_IsObject(field) && strcmp(field->string, "also") == 0) {
@@ -271,8 +270,8 @@ static enum rf_status put_found(struct sheet_grid *grid, const cJSON *found, con
                 sheet_add_number(one->valuedouble, grid->style.decimal, &cell);
             else
                 text_add(&cell, cJSON_IsTrue(one) ? "yes" : "no");
-            status = cell.failed ? fail_memory(error)
-                                 : set_cell(grid, row, column++, cell.bytes, error);
+            status =
+                cell.failed ? fail_memory(error) : set_cell(grid, row, column++, cell.bytes, error);
         }
         text_finish(&key);
         text_finish(&cell);
@@ -301,8 +300,8 @@ static enum rf_status edit_found(struct sheet_grid *grid, const struct job_chang
     if (change->how == CHANGE_REMOVE)
         return RF_OK;
     cJSON *found = NULL;
-    enum rf_status status = json_parse(change->found, strlen(change->found), "found",
-                                       JSON_ONE_LINE, &found, error);
+    enum rf_status status =
+        json_parse(change->found, strlen(change->found), "found", JSON_ONE_LINE, &found, error);
     if (status == RF_OK && !cJSON_IsObject(found))
         status = fail(error, RF_REFUSED,
                       "%s: found: needs an object such as {\"family\": \"none\"}", grid->source);

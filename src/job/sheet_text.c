@@ -57,8 +57,7 @@ cJSON *sheet_private_value(const char *cell, char decimal)
     struct rf_error ignored;
     if (sheet_number(cell, decimal, json, sizeof json))
         return cJSON_Parse(json);
-    enum rf_status status =
-        json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored);
+    enum rf_status status = json_parse(cell, strlen(cell), "", JSON_ONE_LINE, &value, &ignored);
     return status == RF_OK || status == RF_MEMORY ? value : cJSON_CreateString(cell);
 }
 

@@ -155,8 +155,7 @@ static void put_private_rows(struct writing *writing, const cJSON *object, const
 static bool list_has_id(const cJSON *list, const char *id)
 {
     const cJSON *point;
-    cJSON_ArrayForEach(point, list)
-    {
+    cJSON_ArrayForEach(point, list) {
         const cJSON *has = member(point, "id");
         if (cJSON_IsString(has) && strcmp(has->valuestring, id) == 0)
             return true;
@@ -199,8 +198,7 @@ static void put_setups_row(struct writing *writing)
     bool tell = false;
     size_t n = 0;
     const cJSON *setup;
-    cJSON_ArrayForEach(setup, writing->readings)
-    {
+    cJSON_ArrayForEach(setup, writing->readings) {
         if (is_private(setup))
             continue;
         bool read = false;
@@ -212,8 +210,7 @@ static void put_setups_row(struct writing *writing)
     if (!tell)
         return;
     put_word(writing, "setups");
-    cJSON_ArrayForEach(setup, writing->readings)
-    {
+    cJSON_ArrayForEach(setup, writing->readings) {
         if (!is_private(setup))
             put_word(writing, setup->string);
     }
@@ -223,8 +220,8 @@ static void put_setups_row(struct writing *writing)
 static void put_head(struct writing *writing)
 {
     static const char *const texts[] = {"job", "date", "note"};
-    static const char *const numbers[] = {"live_mm2", "cpc_mm2", "temperature_c",
-                                          "length_accuracy", "order"};
+    static const char *const numbers[] = {"live_mm2", "cpc_mm2", "temperature_c", "length_accuracy",
+                                          "order"};
     const cJSON *ends = member(writing->readings, setups[0].name);
     put_word(writing, "format");
     put_word(writing, "ringfettle-sheet/1");
@@ -253,8 +250,7 @@ static void put_head(struct writing *writing)
     put_private_rows(writing, writing->readings, "readings.", NULL);
     put_private_rows(writing, writing->access, "access.", is_point_id);
     const cJSON *setup;
-    cJSON_ArrayForEach(setup, writing->readings)
-    {
+    cJSON_ArrayForEach(setup, writing->readings) {
         struct text path = {0};
         text_addf(&path, "readings.%s.", setup->string);
         if (path.failed)
@@ -286,15 +282,14 @@ static void note_own(struct writing *writing, const char *names[MAX_OWN], size_t
 }
 
 static const char *const column_keys[N_COLUMNS] = {
-    [COLUMN_LABEL] = "label", [COLUMN_KIND] = "kind", [COLUMN_METRES] = "run_m",
-    [COLUMN_FROM] = "from", [COLUMN_LIVE] = "live_mm2", [COLUMN_CPC] = "cpc_mm2",
+    [COLUMN_LABEL] = "label", [COLUMN_KIND] = "kind",     [COLUMN_METRES] = "run_m",
+    [COLUMN_FROM] = "from",   [COLUMN_LIVE] = "live_mm2", [COLUMN_CPC] = "cpc_mm2",
 };
 
 static void note_columns_of(struct writing *writing, const cJSON *list)
 {
     const cJSON *point;
-    cJSON_ArrayForEach(point, list)
-    {
+    cJSON_ArrayForEach(point, list) {
         for (size_t i = 0; i < N_COLUMNS; i++)
             if (column_keys[i] != NULL && member(point, column_keys[i]) != NULL)
                 writing->columns[i] = true;
@@ -304,16 +299,14 @@ static void note_columns_of(struct writing *writing, const cJSON *list)
 
 static void note_access_of(struct writing *writing, const char *place)
 {
-    note_own(writing, writing->access_own, &writing->n_access_own,
-             member(writing->access, place));
+    note_own(writing, writing->access_own, &writing->n_access_own, member(writing->access, place));
 }
 
 /* In the order of places, so that a sheet read and written again is the same. */
 static void note_access_of_points(struct writing *writing, const cJSON *list)
 {
     const cJSON *point;
-    cJSON_ArrayForEach(point, list)
-    {
+    cJSON_ArrayForEach(point, list) {
         const cJSON *id = member(point, "id");
         if (cJSON_IsString(id))
             note_access_of(writing, id->valuestring);
@@ -336,8 +329,7 @@ static void note_columns(struct writing *writing, const size_t wanted[], size_t 
     note_columns_of(writing, member(writing->ring, "points"));
     note_columns_of(writing, member(writing->ring, "spurs"));
     const cJSON *item;
-    cJSON_ArrayForEach(item, writing->access)
-    {
+    cJSON_ArrayForEach(item, writing->access) {
         if (is_private(item) && !is_point_id(writing, item->string))
             continue;
         writing->columns[COLUMN_OPEN] |= cJSON_IsNumber(item) || member(item, "open") != NULL;
@@ -349,8 +341,7 @@ static void note_columns(struct writing *writing, const size_t wanted[], size_t 
     for (size_t i = 0; i < n; i++)
         if (wanted[i] == 0) /* end to end: rows, the first */
             note_setup(writing, 0);
-    cJSON_ArrayForEach(item, writing->readings)
-    {
+    cJSON_ArrayForEach(item, writing->readings) {
         size_t setup = setup_find(item->string);
         if (setup != N_SETUPS && setup != 0)
             note_setup(writing, setup);
@@ -434,8 +425,7 @@ static bool is_needed(const struct writing *writing, const char *place, enum spo
 static void put_places(struct writing *writing, const cJSON *list)
 {
     const cJSON *point;
-    cJSON_ArrayForEach(point, list)
-    {
+    cJSON_ArrayForEach(point, list) {
         const cJSON *id = member(point, "id");
         if (cJSON_IsString(id))
             put_place(writing, id->valuestring, point);
@@ -474,7 +464,8 @@ enum rf_status sheet_write(const cJSON *document, const struct sheet_style *styl
     put_table(&writing);
     text_finish(&writing.cell);
     if (writing.too_many)
-        return fail(error, RF_LIMIT, "found more than %d kinds of keys that begin x_ at points; "
+        return fail(error, RF_LIMIT,
+                    "found more than %d kinds of keys that begin x_ at points; "
                     "needs at most so many columns in a sheet",
                     MAX_OWN);
     return out->failed ? fail_memory(error) : RF_OK;

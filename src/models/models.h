@@ -14,7 +14,12 @@
 #include <stdbool.h>
 #include <stddef.h>
 
-enum { MODELS_MAX_SIZES = 16, MODELS_MAX_CABLES = 16, MODELS_MAX_FAMILIES = 32, MODELS_MAX_KINDS = 4 };
+enum {
+    MODELS_MAX_SIZES = 16,
+    MODELS_MAX_CABLES = 16,
+    MODELS_MAX_FAMILIES = 32,
+    MODELS_MAX_KINDS = 4
+};
 
 /* conductor.json */
 struct conductor_row {
@@ -55,7 +60,7 @@ struct family_prior {
         double share;     /* of the family's prior, if all kinds are present */
     } kinds[MODELS_MAX_KINDS];
     struct lognormal parameter;
-    bool metres; /* the parameter is in m, not Ω */
+    bool metres;     /* the parameter is in m, not Ω */
     size_t n_shares; /* effort.json: where the defect shows, by names the family knows */
     struct {
         const char *name; /* "end", "inside", "point" … */
@@ -78,7 +83,7 @@ struct rf_models {
     struct conductor_row sizes[MODELS_MAX_SIZES]; /* ascending mm² */
     size_t n_cables;
     struct cable_row cables[MODELS_MAX_CABLES];
-    double temperature_coefficient; /* 0.00393 per °C, referred to 20 °C */
+    double temperature_coefficient;  /* 0.00393 per °C, referred to 20 °C */
     struct lognormal unknown_length; /* 5 m, 0.7 */
     double conductor_sigma;          /* 0.02 of the log, each of L, N, E */
     double unknown_cpc_mm2;          /* 1.5 */

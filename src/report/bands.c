@@ -35,7 +35,8 @@ static void take_bands(const struct rf_diagnosis *diagnosis, const struct forwar
             continue;
         double ohms = forward_mean(forward, i);
         double noise = instrument_sigma(&diagnosis->models->instrument, fmax(ohms, 0));
-        double variance = fit_variance(&diagnosis->ranked[0], forward_gradient(forward, i), scratch);
+        double variance =
+            fit_variance(&diagnosis->ranked[0], forward_gradient(forward, i), scratch);
         bands[i] = band_around(ohms, sqrt(noise * noise + variance));
     }
 }

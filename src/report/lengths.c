@@ -10,8 +10,8 @@ double run_metres(const struct rf_diagnosis *diagnosis, size_t run)
     size_t parameter = (size_t)diagnosis->ring.map.runs + run;
     if (diagnosis->n_ranked == 0 || parameter >= diagnosis->ranked[0].n_parameters)
         return median;
-    return median * exp(diagnosis->ring.parameters[parameter].sigma *
-                        diagnosis->ranked[0].theta[parameter]);
+    return median *
+           exp(diagnosis->ring.parameters[parameter].sigma * diagnosis->ranked[0].theta[parameter]);
 }
 
 size_t spur_depth(const struct rf_job *job, size_t place)

@@ -5,7 +5,6 @@
 
 #include <math.h>
 
-
 /* The mean of the finite readings of a spot; NAN where none is. *taken: whether there is any. */
 static double mean_reading(const struct rf_job *job, enum spot spot, bool *taken)
 {

@@ -45,7 +45,7 @@ const char *sort_name(size_t family); /* the family's name, "two_defects" */
 size_t n_sorts(void);                 /* families and two_defects */
 
 struct review_line {
-    uint64_t number; /* of the job among those read in this run, from 1; 0: not of this run */
+    uint64_t number;   /* of the job among those read in this run, from 1; 0: not of this run */
     char *job, *words; /* the job's name; the likeliest finding */
     enum verdict verdict;
     int64_t confidence;      /* of that finding */

@@ -157,7 +157,7 @@ static enum rf_status read_looks(const struct json_at *found, struct review_line
     enum rf_status status = json_array(&looks, N_LOOK_BINS, N_LOOK_BINS, needs, error);
     if (status == RF_OK)
         status = read_whole(found, "places", 0, 1e6 * PARTS, &line->found.places, error);
-    JSON_EACH (&looks, look, i) {
+    JSON_EACH(&looks, look, i) {
         double chance = 0;
         if (status == RF_OK)
             status = json_number(&look, 0, PARTS, needs, &chance, error);

@@ -31,7 +31,7 @@ static cJSON *plan_setup(cJSON *readings, const char *name, bool *failed)
 static void plan_points(cJSON *setup, const cJSON *points, bool *failed)
 {
     const cJSON *point = NULL;
-    cJSON_ArrayForEach (point, points) {
+    cJSON_ArrayForEach(point, points) {
         const char *id = cJSON_GetStringValue(cJSON_GetObjectItemCaseSensitive(point, "id"));
         const char *kind = cJSON_GetStringValue(cJSON_GetObjectItemCaseSensitive(point, "kind"));
         bool box = kind != NULL && strcmp(kind, kind_names[KIND_JUNCTION_BOX]) == 0;
@@ -187,17 +187,18 @@ enum rf_status simulation_random_ring(uint32_t seed, enum ring_plan plan, struct
     generator_seed(generator, seed, "ring");
     snprintf(name, sizeof name, "ring-%lu", (unsigned long)seed);
     size_t n = POINTS_LEAST + gsl_rng_uniform_int(generator, POINTS_MOST - POINTS_LEAST + 1);
-    text_addf(&text, "{\"format\": \"ringfettle-job/1\", \"job\": \"%s\", \"ring\": {"
-                     "\"live_mm2\": 2.5, \"cpc_mm2\": 1.5, \"length_accuracy\": 0.2, ", name);
+    text_addf(&text,
+              "{\"format\": \"ringfettle-job/1\", \"job\": \"%s\", \"ring\": {"
+              "\"live_mm2\": 2.5, \"cpc_mm2\": 1.5, \"length_accuracy\": 0.2, ",
+              name);
     write_lengths(n, generator, &text);
     size_t n_spurs = write_spurs(n, generator, &text);
     text_add(&text, "}, ");
     write_plan(plan, n, n_spurs, generator, &text);
     text_add(&text, "}");
     gsl_rng_free(generator);
-    enum rf_status status = text.failed
-                                ? fail_memory(error)
-                                : rf_job_parse(text.bytes, text.length, name, ring, error);
+    enum rf_status status =
+        text.failed ? fail_memory(error) : rf_job_parse(text.bytes, text.length, name, ring, error);
     text_finish(&text);
     return status;
 }

@@ -203,11 +203,11 @@ static enum rf_status read_all(const struct truth *t, const struct rf_job *ring,
 {
     struct measurement *measurements = NEW_ARRAY(struct measurement, ring->n_readings);
     size_t *repeats = NEW_ARRAY(size_t, ring->n_readings);
-    enum rf_status status =
-        measurements != NULL && repeats != NULL ? RF_OK : fail_memory(error);
+    enum rf_status status = measurements != NULL && repeats != NULL ? RF_OK : fail_memory(error);
     for (size_t i = 0; i < ring->n_readings && status == RF_OK; i++) {
         const struct reading *r = &ring->readings[i];
-        measurements[i] = (struct measurement){.setup = r->setup, .spot = r->spot, .place = r->place};
+        measurements[i] =
+            (struct measurement){.setup = r->setup, .spot = r->spot, .place = r->place};
         repeats[i] = r->repeat;
     }
     if (status == RF_OK)

@@ -40,7 +40,7 @@ struct simulation {
     bool given;                   /* `hypothesis` says what is wrong; else it is drawn */
     struct hypothesis hypothesis; /* of the ring's job; n_faults 0: wired as recorded */
     double value[FAULTS_AT_ONCE]; /* Ω or m, each fault's parameter; 0: drawn */
-    size_t defects; /* where drawn: so many different ones; 0: one or none, from the priors */
+    size_t defects;   /* where drawn: so many different ones; 0: one or none, from the priors */
     const char *name; /* `job`; NULL: "simulated-SEED" */
 };
 
@@ -55,14 +55,14 @@ struct shown {
 struct truth {
     uint32_t seed;
     const struct rf_models *models;
-    struct rf_job *job; /* the simulated job: the ring as recorded, what was read, `found` */
+    struct rf_job *job;     /* the simulated job: the ring as recorded, what was read, `found` */
     struct cJSON *document; /* the same as a document, its readings with the display's digits */
     struct hypothesis hypothesis;
     struct wiring wiring; /* with the hypothesis applied */
     int parameter_of[FAULTS_AT_ONCE];
     double *theta; /* [wiring.n_parameters] */
     struct {
-        bool shows; /* looking can show it at all */
+        bool shows;       /* looking can show it at all */
         bool each_enough; /* at each of its looks, whichever; else only at `look` */
         struct look look;
     } spots[FAULTS_AT_ONCE]; /* where each fault really is */

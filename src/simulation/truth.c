@@ -67,8 +67,9 @@ enum rf_status truth_set_value(struct truth *t, size_t fault, double value, stru
     const struct fault_family *family = t->hypothesis.faults[fault].family;
     int j = t->parameter_of[fault];
     if (j == NO_PARAMETER)
-        return fail(error, RF_REFUSED, "a fault of the family %s, as given, takes no value; found %g",
-                    family->name, value);
+        return fail(error, RF_REFUSED,
+                    "a fault of the family %s, as given, takes no value; found %g", family->name,
+                    value);
     if (!(value > 0) || !isfinite(value))
         return fail(error, RF_REFUSED, "found %g for a fault of the family %s; needs %s above 0",
                     value, family->name, family->metres ? "metres" : "ohms");

@@ -132,8 +132,7 @@ enum rf_status truth_write(const struct truth *t, struct text *out, struct rf_er
                 put(document, "models", cJSON_CreateString(rf_models_name(t->models))) &&
                 put_faults(document, t) && put(document, "hidden", write_hidden(t)) &&
                 put(document, "job", cJSON_Duplicate(t->document, true));
-    enum rf_status status =
-        good ? job_write_document(document, out, error) : fail_memory(error);
+    enum rf_status status = good ? job_write_document(document, out, error) : fail_memory(error);
     cJSON_Delete(document);
     return status;
 }
@@ -146,8 +145,7 @@ static enum rf_status read_format(const struct json_at *document, struct rf_erro
     const char *const formats[] = {truth_format};
     size_t index = 0;
     struct json_at at = json_member(document, "format");
-    enum rf_status status =
-        json_object(document, known, sizeof known / sizeof *known, error);
+    enum rf_status status = json_object(document, known, sizeof known / sizeof *known, error);
     return status == RF_OK ? json_choice(&at, formats, 1, &index, error) : status;
 }
 
@@ -197,7 +195,7 @@ static enum rf_status read_run(const struct json_at *at, const struct rf_job *jo
     static const char needs[] = "the two places of a run";
     size_t ends[2] = {0};
     enum rf_status status = json_array(at, 2, 2, needs, error);
-    JSON_EACH (at, element, i) {
+    JSON_EACH(at, element, i) {
         if (status == RF_OK)
             status = read_place(&element, job, &ends[i], error);
     }
@@ -270,7 +268,7 @@ static enum rf_status read_faults(const struct json_at *document, struct truth *
 {
     struct json_at at = json_member(document, "faults");
     enum rf_status status = json_array(&at, 0, 2, "a list of at most two faults", error);
-    JSON_EACH (&at, element, i) {
+    JSON_EACH(&at, element, i) {
         if (status == RF_OK)
             status = read_fault(&element, t, error);
     }
@@ -283,7 +281,7 @@ static enum rf_status read_values(const struct json_at *document, struct truth *
 {
     enum rf_status status = RF_OK;
     struct json_at faults = json_member(document, "faults");
-    JSON_EACH (&faults, element, i) {
+    JSON_EACH(&faults, element, i) {
         if (status != RF_OK || t->parameter_of[i] == NO_PARAMETER)
             continue;
         bool metres = t->hypothesis.faults[i].family->metres;
@@ -310,7 +308,7 @@ static enum rf_status read_hidden_field(const struct json_at *hidden,
         return read_theta(&at, theta, error);
     enum rf_status status =
         json_array(&at, field->n, field->n, "as many numbers as the ring has", error);
-    JSON_EACH (&at, element, i) {
+    JSON_EACH(&at, element, i) {
         if (status == RF_OK)
             status = read_theta(&element, &theta[i], error);
     }
