@@ -73,6 +73,7 @@ void csv_close(struct csv_reader *reader)
 void csv_begin_behind(struct csv_reader *reader, size_t rows)
 {
     reader->next_number = reader->next_line = rows + 1;
+    reader->started = true; /* no mark stands here */
 }
 
 void csv_set_limit(struct csv_reader *reader, size_t bytes)

@@ -120,15 +120,23 @@ static bool put(cJSON *object, const char *key, cJSON *item)
     return false;
 }
 
-/* n readings of one spot: a value, or a list of them. */
+/* n readings of one spot: a value, or a list of them; nothing where `finite_only` leaves none. */
 static bool put_spot(cJSON *setup, const char *key, const struct shown shown[], size_t n,
-                     const struct instrument_model *in)
+                     bool finite_only, const struct instrument_model *in)
 {
-    if (n == 1)
-        return put(setup, key, write_reading(shown, in));
+    size_t kept = 0, last = 0;
+    for (size_t i = 0; i < n; i++)
+        if (!finite_only || !shown[i].open) {
+            kept++;
+            last = i;
+        }
+    if (kept < 2)
+        return kept == 0 || put(setup, key, write_reading(&shown[last], in));
     cJSON *list = cJSON_CreateArray();
     bool good = list != NULL;
     for (size_t i = 0; i < n && good; i++) {
+        if (finite_only && shown[i].open)
+            continue;
         cJSON *item = write_reading(&shown[i], in);
         good = item != NULL && cJSON_AddItemToArray(list, item);
         if (!good)
@@ -154,7 +162,8 @@ static cJSON *write_readings(const struct rf_job *ring, const struct shown shown
             good = put(readings, name, cJSON_CreateObject());
         if (good)
             good = put_spot(cJSON_GetObjectItemCaseSensitive(readings, name),
-                            reading_key(ring, reading), &shown[i], n, in);
+                            reading_key(ring, reading), &shown[i], n,
+                            reading->spot == SPOT_HIGHEST, in); /* which is never over range */
     }
     if (good)
         return readings;
