@@ -12,6 +12,9 @@
  *     not read here. `transposed` is left out: where the two conductors differ, which of them
  *     lands on the other's terminal with its resistance depends on the direction.
  *
+ * The last two not where the misfit test says that nothing explains the readings: which of them a fit
+ * then writes off can hang on the last bit.
+ *
  * Reading values are from the bytes, or simulated with a seed from them.
  */
 
@@ -435,6 +438,8 @@ static void compare(const struct made *made,
          whole->n_hypotheses);
     if (as->renamed)
         expect_near(screened, other, 0, "other ids");
+    else if (whole->misfit.flag || other->misfit.flag)
+        ;
     else if (as->reordered)
         expect_near(whole, other, 1e-3, "another order");
     else
