@@ -147,9 +147,10 @@ static bool add_row(struct sheet_grid *grid, const struct csv_row *from)
 }
 
 /* Whether the bytes have a row that begins `place` and goes on, their cells taken apart at
- * `separator`. Rows that are not well-formed are the reader's to refuse. */
+ * `separator`; *clean: and all before it are well-formed. Those that are not are the reader's to
+ * refuse. */
 static enum rf_status has_head(const char *bytes, size_t length, char separator, bool *found,
-                               struct rf_error *error)
+                               bool *clean, struct rf_error *error)
 {
     const struct csv_row *row;
     struct rf_error ignored;
@@ -157,9 +158,11 @@ static enum rf_status has_head(const char *bytes, size_t length, char separator,
     if (reader == NULL)
         return fail_memory(error);
     *found = false;
+    *clean = true;
     enum rf_status status = RF_OK;
     do {
         status = csv_next(reader, &row, &ignored);
+        *clean = *clean && status == RF_OK;
         if (row != NULL && status == RF_OK)
             *found = row->n_cells > 1 && sheet_same_word(row->cells[0].text, "place");
     } while (row != NULL && !*found);
@@ -170,16 +173,21 @@ static enum rf_status has_head(const char *bytes, size_t length, char separator,
 static enum rf_status find_separator(struct sheet_grid *grid, const char *bytes, size_t length,
                                      struct rf_error *error)
 {
+    bool any = false;
     for (size_t i = 0; i < sizeof separators; i++) {
-        bool found = false;
-        enum rf_status status = has_head(bytes, length, separators[i], &found, error);
+        bool found = false, clean = false;
+        enum rf_status status = has_head(bytes, length, separators[i], &found, &clean, error);
         if (status != RF_OK)
             return status;
-        if (found) {
+        /* A note may hold lines of another sheet: where quotes work out, it is taken whole. */
+        if (found && (clean || !any))
             grid->style.separator = separators[i];
+        if (found && clean)
             return RF_OK;
-        }
+        any = any || found;
     }
+    if (any)
+        return RF_OK;
     return fail(error, RF_SYNTAX,
                 "%s: found neither a JSON text, which begins {, nor a sheet with a row that begins "
                 "\"place\"; needs one of them",

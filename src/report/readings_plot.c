@@ -124,6 +124,7 @@ static void draw_ohm_axis(struct plot *plot)
         text_addf(&words, "%.*f", digits, ohms);
         scene_label(plot->scene, ROLE_TICK, LEFT - 5, y + 4, ANCHOR_END, tick_size, LEFT - 6,
                     words.failed ? "" : words.bytes);
+        plot->scene->failed = plot->scene->failed || words.failed;
         text_finish(&words);
     }
     scene_label(plot->scene, ROLE_TICK, 4, 18, ANCHOR_START, tick_size, 60, "Ω");
@@ -144,6 +145,7 @@ static void draw_metre_axis(struct plot *plot)
         scene_segment(plot->scene, ROLE_AXIS, x, LOWER, x, LOWER + 4);
         scene_label(plot->scene, ROLE_TICK, x, LOWER + 38, ANCHOR_MIDDLE, tick_size,
                     (RIGHT - LEFT) / 5.0, words.failed ? "" : words.bytes);
+        plot->scene->failed = plot->scene->failed || words.failed;
         text_finish(&words);
     }
 }

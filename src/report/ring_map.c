@@ -365,6 +365,7 @@ static void draw_board(struct map *map)
         scene_label(map->scene, ROLE_NUMBER, map->layout->middle, 45, ANCHOR_MIDDLE, name_size,
                     60, words.failed ? "" : words.bytes);
     }
+    map->scene->failed = map->scene->failed || words.failed;
     text_finish(&words);
     scene_label(map->scene, ROLE_NOTE, map->layout->left, 52, ANCHOR_MIDDLE, note_size, 60, "out");
     scene_label(map->scene, ROLE_NOTE, map->layout->right, 52, ANCHOR_MIDDLE, note_size, 60, "in");
