@@ -7,6 +7,8 @@
 #include <math.h>
 #include <string.h>
 
+static const size_t NOT_LIVE = (size_t)-1;
+
 double minutes_of_look(const struct rf_job *job, const struct effort_model *effort,
                        const struct look *look)
 {
@@ -48,6 +50,9 @@ void looking_finish(struct looking *l)
     free(l->chance);
     free(l->looked);
     free(l->reached);
+    free(l->live);
+    free(l->rate);
+    free(l->slot);
     *l = (struct looking){0};
 }
 
@@ -177,10 +182,13 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
     l->chance = NEW_ARRAY(double, most_locations);
     l->looked = NEW_ARRAY(bool, most_locations);
     l->reached = NEW_ARRAY(bool, l->n_reach);
+    l->live = NEW_ARRAY(size_t, most_locations);
+    l->rate = NEW_ARRAY(double, most_locations);
+    l->slot = NEW_ARRAY(size_t, most_locations);
     if (l->locations == NULL || l->showings == NULL || l->first_of_hypothesis == NULL ||
         l->showings_at == NULL || l->first_at == NULL || l->weight == NULL || l->defect == NULL ||
         l->reach_minutes == NULL || l->left == NULL || l->chance == NULL || l->looked == NULL ||
-        l->reached == NULL) {
+        l->reached == NULL || l->live == NULL || l->rate == NULL || l->slot == NULL) {
         looking_finish(l);
         return fail_memory(error);
     }
@@ -190,6 +198,8 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
         l->left[i] = 1.0;
     for (size_t place = 0; place < l->n_reach; place++)
         l->reach_minutes[place] = minutes_to_reach(job, place);
+    for (size_t i = 0; i < most_locations; i++)
+        l->slot[i] = NOT_LIVE;
     list_showings(l, diagnosis, false);
     condition_shares(l);
     index_by_location(l);
@@ -208,6 +218,21 @@ static double showing_weight(const struct looking *l, const struct showing *s, d
     return weight * (s->each_enough || left[s->part] < s->share ? left[s->part] : s->share);
 }
 
+static double cost_of(const struct looking *l, size_t location)
+{
+    const struct location *at = &l->locations[location];
+    return at->minutes + (l->reached[at->reach] ? 0.0 : l->reach_minutes[at->reach]);
+}
+
+/* Puts a location's chance per minute in order; 0 where nothing would show more than rounding. */
+static void update_rate(struct looking *l, size_t location)
+{
+    double cost = cost_of(l, location), chance = l->chance[location];
+    bool shows = !l->looked[location] && chance > l->rounding;
+    /* A look that costs nothing comes first. */
+    l->rate[l->slot[location]] = shows ? chance / (cost > 1e-9 ? cost : 1e-9) : 0.0;
+}
+
 /* Puts a hypothesis' showings, and the chances they are part of, in order with what is left. */
 static void update_hypothesis(struct looking *l, size_t hypothesis, double weight)
 {
@@ -220,40 +245,43 @@ static void update_hypothesis(struct looking *l, size_t hypothesis, double weigh
     }
 }
 
-static double cost_of(const struct looking *l, size_t location)
-{
-    const struct location *at = &l->locations[location];
-    return at->minutes + (l->reached[at->reach] ? 0.0 : l->reach_minutes[at->reach]);
-}
-
 /* Ties go by place, as the diagnosis lists them. */
 static bool stands_before(const struct look *one, const struct look *other)
 {
     return one->where != other->where ? one->where < other->where : one->index < other->index;
 }
 
-/* By chance per minute; n_locations where nothing would show more than rounding. */
-static size_t best_location(const struct looking *l, double rounding)
+static double highest_rate(const double *rate, size_t n)
+{
+    double most[4] = {0.0};
+    size_t k = 0;
+    for (; k + 4 <= n; k += 4)
+        for (size_t i = 0; i < 4; i++)
+            most[i] = rate[k + i] > most[i] ? rate[k + i] : most[i];
+    for (; k < n; k++)
+        most[0] = rate[k] > most[0] ? rate[k] : most[0];
+    return fmax(fmax(most[0], most[1]), fmax(most[2], most[3]));
+}
+
+/* By chance per minute; n_locations where nothing would show. */
+static size_t best_location(const struct looking *l)
 {
     size_t best = l->n_locations;
-    double most = 0.0;
-    for (size_t i = 0; i < l->n_locations; i++) {
-        if (l->looked[i] || l->chance[i] <= rounding)
-            continue;
-        double cost = cost_of(l, i);
-        /* A look that costs nothing comes first. */
-        double rate = l->chance[i] / (cost > 1e-9 ? cost : 1e-9);
-        bool tie = best < l->n_locations && fabs(rate - most) <= 1e-9 * most;
-        if (tie ? stands_before(&l->locations[i].look, &l->locations[best].look) : rate > most) {
-            most = rate;
-            best = i;
-        }
-    }
+    double most = highest_rate(l->rate, l->n_live), tied = most * (1.0 - 1e-9);
+    if (most <= 0.0)
+        return best;
+    for (size_t k = 0; k < l->n_live; k++)
+        if (l->rate[k] >= tied &&
+            (best == l->n_locations ||
+             stands_before(&l->locations[l->live[k]].look, &l->locations[best].look)))
+            best = l->live[k];
     return best;
 }
 
 static void rule_out(struct looking *l, size_t location, const double weights[])
 {
+    bool nearer = !l->reached[l->locations[location].reach] &&
+                  l->reach_minutes[l->locations[location].reach] > 0.0;
     l->looked[location] = true;
     l->reached[l->locations[location].reach] = true;
     for (size_t k = l->first_at[location]; k < l->first_at[location + 1]; k++) {
@@ -263,20 +291,53 @@ static void rule_out(struct looking *l, size_t location, const double weights[])
             continue;
         *left = s->each_enough || *left < s->share ? 0.0 : *left - s->share;
         update_hypothesis(l, s->hypothesis, weights[s->hypothesis]);
+        for (size_t i = l->first_of_hypothesis[s->hypothesis];
+             i < l->first_of_hypothesis[s->hypothesis + 1]; i++)
+            update_rate(l, l->showings[i].location);
     }
+    update_rate(l, location);
+    for (size_t k = 0; nearer && k < l->n_live; k++)
+        update_rate(l, l->live[k]);
 }
 
-static void start_anew(struct looking *l, const double weights[])
+/* Clears what the last belief left where it carried weight, which is often in few places. */
+static void forget_last(struct looking *l)
 {
-    for (size_t i = 0; i < l->n_hypotheses * FAULTS_AT_ONCE; i++)
-        l->left[i] = 1.0;
-    memset(l->looked, 0, l->n_locations * sizeof *l->looked);
-    memset(l->reached, 0, l->n_reach * sizeof *l->reached);
-    memset(l->chance, 0, l->n_locations * sizeof *l->chance);
-    memset(l->weight, 0, l->n_showings * sizeof *l->weight);
+    for (size_t k = 0; k < l->n_live; k++) {
+        size_t location = l->live[k];
+        l->slot[location] = NOT_LIVE;
+        l->looked[location] = false;
+        l->reached[l->locations[location].reach] = false;
+    }
+    l->n_live = 0;
+}
+
+static void start_hypothesis(struct looking *l, size_t hypothesis, double weight)
+{
+    for (size_t part = 0; part < FAULTS_AT_ONCE; part++)
+        l->left[hypothesis * FAULTS_AT_ONCE + part] = 1.0;
+    for (size_t i = l->first_of_hypothesis[hypothesis]; i < l->first_of_hypothesis[hypothesis + 1];
+         i++) {
+        size_t location = l->showings[i].location;
+        l->weight[i] = 0.0;
+        if (l->slot[location] != NOT_LIVE)
+            continue;
+        l->slot[location] = l->n_live;
+        l->live[l->n_live++] = location;
+        l->chance[location] = 0.0;
+    }
+    update_hypothesis(l, hypothesis, weight);
+}
+
+static void start_anew(struct looking *l, const double weights[], double total)
+{
+    l->rounding = 1e-12 * total;
+    forget_last(l);
     for (size_t h = 0; h < l->n_hypotheses; h++)
         if (weights[h] > 0.0)
-            update_hypothesis(l, h, weights[h]);
+            start_hypothesis(l, h, weights[h]);
+    for (size_t k = 0; k < l->n_live; k++)
+        update_rate(l, l->live[k]);
 }
 
 double looking_expected(struct looking *l, const double weights[], struct look_step steps[],
@@ -287,9 +348,9 @@ double looking_expected(struct looking *l, const double weights[], struct look_s
     for (size_t h = 0; h < l->n_hypotheses; h++)
         *(l->defect[h] ? &defects : &none) += weights[h];
     double total = defects + none;
-    start_anew(l, weights);
+    start_anew(l, weights, total);
     while (defects > 0.0 && defects >= l->stop_share * (defects + none)) {
-        size_t location = best_location(l, 1e-12 * total);
+        size_t location = best_location(l);
         if (location == l->n_locations)
             break;
         double cost = cost_of(l, location), chance = l->chance[location];
@@ -313,8 +374,8 @@ size_t looking_best(struct looking *l, const double weights[], double *minutes)
     double total = 0.0;
     for (size_t h = 0; h < l->n_hypotheses; h++)
         total += weights[h];
-    start_anew(l, weights);
-    size_t location = best_location(l, 1e-12 * total);
+    start_anew(l, weights, total);
+    size_t location = best_location(l);
     if (location < l->n_locations)
         *minutes = cost_of(l, location);
     return location;

@@ -46,6 +46,11 @@ struct looking {
     double *chance; /* [location] the sum of that */
     bool *looked;   /* [location] */
     bool *reached;  /* [place] */
+    size_t n_live;
+    size_t *live;   /* the locations where the belief at hand could show */
+    double *rate;   /* [live] chance per minute there */
+    size_t *slot;   /* [location] where it stands in `live` */
+    double rounding; /* chances up to this are none */
 };
 
 /* Minutes of looking there, without reaching it. */

@@ -9,7 +9,7 @@
 /* How deep, and how wide: of a set-up's candidates only the best at looking one reading ahead are
  * looked into further. */
 enum { MOST_DEPTH = 3 };
-static const size_t beam[MOST_DEPTH + 1] = {0, 0, 3, 4}; /* by the depth left */
+static const size_t beam[MOST_DEPTH + 1] = {0, 1, 3, 4}; /* by the depth left */
 enum { SETUPS_DEEPENED = 6 };
 
 /* Predictions nearer than this many of their σ are one outcome. */
@@ -230,43 +230,49 @@ static double cost_of(const struct measuring *m, size_t candidate, bool first)
 static double value_of(struct measuring *m, const double weights[], size_t setup, size_t depth,
                        bool first);
 
-/* Per unit of weight: the reading's cost, and what is expected after it. */
+/* Per unit of weight: the reading's cost, and what is expected after it. Where that is not below
+ * `limit`, any value that is not. */
 static double value_after(struct measuring *m, const double weights[], double total,
-                          size_t candidate, size_t depth, bool first)
+                          size_t candidate, size_t depth, bool first, double limit)
 {
     struct shown_outcome outcomes[MOST_OUTCOMES];
     double *after = m->levels[depth].after;
     size_t n = measuring_outcomes(m, weights, candidate, outcomes, after);
-    double value = 0.0;
+    double value = 0.0, cost = cost_of(m, candidate, first);
     if (n < 2)
         return INFINITY; /* tells nothing */
     m->taken[candidate] = true;
-    for (size_t o = 0; o < n; o++)
+    for (size_t o = 0; o < n && cost + value / total < limit; o++)
         if (outcomes[o].chance > 0.0)
             value += outcomes[o].chance * value_of(m, after + o * m->n_hypotheses,
                                                    m->predictive->candidates[candidate].setup,
                                                    depth - 1, false);
     m->taken[candidate] = false;
-    return cost_of(m, candidate, first) + value / total;
+    return cost + value / total;
 }
 
-/* Values of the set-up's candidates one reading ahead, and their order; returns how many could
- * tell anything. */
+/*
+ * The set-up's candidates that are best one reading ahead, at most `most` of them and none that is
+ * not below `limit`, with their values, in order; returns how many. Others need no looking into:
+ * more readings only improve a candidate.
+ */
 static size_t survey(struct measuring *m, const double weights[], double total, size_t setup,
-                     bool first, struct level *level)
+                     bool first, size_t most, double limit, struct level *level)
 {
     size_t n = 0;
     for (size_t c = m->first[setup]; c < m->first[setup + 1]; c++) {
         if (m->taken[c])
             continue;
-        double value = value_after(m, weights, total, c, 1, first);
+        double value = value_after(m, weights, total, c, 1, first, limit);
         level->value[c] = value;
-        if (!isfinite(value))
+        if (!(value < limit))
             continue;
-        size_t k = n++;
+        size_t k = n < most ? n++ : n - 1;
         for (; k > 0 && level->value[level->order[k - 1]] > value; k--)
             level->order[k] = level->order[k - 1];
         level->order[k] = c;
+        if (n == most)
+            limit = level->value[level->order[n - 1]];
     }
     return n;
 }
@@ -289,19 +295,19 @@ static double cheapest_reading(const struct measuring *m)
 static double value_of(struct measuring *m, const double weights[], size_t setup, size_t depth,
                        bool first)
 {
+    if (depth == 0)
+        return looking_expected(m->looking, weights, NULL, 0, NULL);
     double total = sum_of(weights, m->n_hypotheses);
     double best = looking_expected(m->looking, weights, NULL, 0, NULL);
-    if (depth == 0 || best - best_conceivable(m, weights, total) <= cheapest_reading(m))
+    if ( best - best_conceivable(m, weights, total) <= cheapest_reading(m))
         return best;
     struct level *level = &m->levels[depth];
-    size_t n = survey(m, weights, total, setup, first, level);
-    for (size_t k = 0; k < n; k++) {
-        size_t c = level->order[k];
-        double value = level->value[c];
-        if (depth > 1 && k < beam[depth])
-            value = value_after(m, weights, total, c, depth, first);
-        best = fmin(best, value);
-    }
+    size_t n = survey(m, weights, total, setup, first, beam[depth],
+                      depth > 1 ? INFINITY : best, level);
+    if (n > 0)
+        best = fmin(best, level->value[level->order[0]]);
+    for (size_t k = 0; k < n && depth > 1; k++)
+        best = fmin(best, value_after(m, weights, total, level->order[k], depth, first, best));
     return best;
 }
 
@@ -324,11 +330,12 @@ static int by_value(const void *a, const void *b)
 static void deepen(struct measuring *m, const double weights[], double total, struct choice *choice)
 {
     struct level *level = &m->levels[MOST_DEPTH];
-    size_t n = survey(m, weights, total, choice->setup, true, level);
+    size_t n = survey(m, weights, total, choice->setup, true, beam[MOST_DEPTH], INFINITY, level);
     double change = cost_of_change(m, choice->setup);
-    for (size_t k = 0; k < n && k < beam[MOST_DEPTH]; k++) {
+    for (size_t k = 0; k < n; k++) {
         size_t c = level->order[k];
-        double value = change + value_after(m, weights, total, c, MOST_DEPTH, true);
+        double value = change + value_after(m, weights, total, c, MOST_DEPTH, true,
+                                            choice->value - change);
         if (value < choice->value) {
             choice->value = value;
             choice->candidate = c;
@@ -346,7 +353,7 @@ size_t measuring_choose(struct measuring *m, const double weights[], struct choi
     for (size_t setup = 0; setup < N_SETUPS; setup++) {
         double change = cost_of_change(m, setup);
         if (most_saved <= change + cheapest_reading(m) ||
-            survey(m, weights, total, setup, true, level) == 0)
+            survey(m, weights, total, setup, true, 1, INFINITY, level) == 0)
             continue;
         size_t c = level->order[0];
         choices[n++] = (struct choice){setup, c, change + level->value[c]};
@@ -401,7 +408,7 @@ size_t measuring_follow(struct measuring *m, const double weights[], size_t cand
         struct level *level = &m->levels[2];
         double total = sum_of(belief, m->n_hypotheses);
         double look = looking_expected(m->looking, belief, NULL, 0, NULL);
-        if (n == most || survey(m, belief, total, setup, false, level) == 0 ||
+        if (n == most || survey(m, belief, total, setup, false, 1, INFINITY, level) == 0 ||
             level->value[level->order[0]] >= look)
             break;
         next = level->order[0];
