@@ -53,6 +53,7 @@ void looking_finish(struct looking *l)
     free(l->live);
     free(l->rate);
     free(l->slot);
+    free(l->steady);
     *l = (struct looking){0};
 }
 
@@ -161,6 +162,21 @@ static void condition_shares(struct looking *l)
     }
 }
 
+/* A hypothesis of one fault that shows in parts of one: a look that shows nothing leaves what would
+ * show elsewhere as it is. */
+static void find_steady(struct looking *l, const struct rf_diagnosis *diagnosis)
+{
+    for (size_t h = 0; h < l->n_hypotheses; h++) {
+        double sum = 0.0;
+        l->steady[h] = diagnosis->ranked[h].hypothesis.n_faults == 1;
+        for (size_t i = l->first_of_hypothesis[h]; i < l->first_of_hypothesis[h + 1]; i++) {
+            sum += l->showings[i].share;
+            l->steady[h] = l->steady[h] && !l->showings[i].each_enough;
+        }
+        l->steady[h] = l->steady[h] && sum < 1.0 + 1e-9;
+    }
+}
+
 enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagnosis, size_t n,
                             struct rf_error *error)
 {
@@ -185,10 +201,12 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
     l->live = NEW_ARRAY(size_t, most_locations);
     l->rate = NEW_ARRAY(double, most_locations);
     l->slot = NEW_ARRAY(size_t, most_locations);
+    l->steady = NEW_ARRAY(bool, n);
     if (l->locations == NULL || l->showings == NULL || l->first_of_hypothesis == NULL ||
         l->showings_at == NULL || l->first_at == NULL || l->weight == NULL || l->defect == NULL ||
         l->reach_minutes == NULL || l->left == NULL || l->chance == NULL || l->looked == NULL ||
-        l->reached == NULL || l->live == NULL || l->rate == NULL || l->slot == NULL) {
+        l->reached == NULL || l->live == NULL || l->rate == NULL || l->slot == NULL ||
+        l->steady == NULL) {
         looking_finish(l);
         return fail_memory(error);
     }
@@ -202,6 +220,7 @@ enum rf_status looking_init(struct looking *l, const struct rf_diagnosis *diagno
         l->slot[i] = NOT_LIVE;
     list_showings(l, diagnosis, false);
     condition_shares(l);
+    find_steady(l, diagnosis);
     index_by_location(l);
     return RF_OK;
 }
@@ -251,30 +270,34 @@ static bool stands_before(const struct look *one, const struct look *other)
     return one->where != other->where ? one->where < other->where : one->index < other->index;
 }
 
-static double highest_rate(const double *rate, size_t n)
+enum { LANES = 4 };
+
+/* The highest rate of every fourth live location, so that the next search can pass over most. */
+static double highest_rates(const struct looking *l, double most[LANES])
 {
-    double most[4] = {0.0};
     size_t k = 0;
-    for (; k + 4 <= n; k += 4)
-        for (size_t i = 0; i < 4; i++)
-            most[i] = rate[k + i] > most[i] ? rate[k + i] : most[i];
-    for (; k < n; k++)
-        most[0] = rate[k] > most[0] ? rate[k] : most[0];
+    for (size_t lane = 0; lane < LANES; lane++)
+        most[lane] = 0.0;
+    for (; k + LANES <= l->n_live; k += LANES)
+        for (size_t lane = 0; lane < LANES; lane++)
+            most[lane] = l->rate[k + lane] > most[lane] ? l->rate[k + lane] : most[lane];
+    for (size_t lane = 0; k + lane < l->n_live; lane++)
+        most[lane] = fmax(l->rate[k + lane], most[lane]);
     return fmax(fmax(most[0], most[1]), fmax(most[2], most[3]));
 }
 
 /* By chance per minute; n_locations where nothing would show. */
 static size_t best_location(const struct looking *l)
 {
+    double highest[LANES];
+    double most = highest_rates(l, highest), tied = most * (1.0 - 1e-9);
     size_t best = l->n_locations;
-    double most = highest_rate(l->rate, l->n_live), tied = most * (1.0 - 1e-9);
-    if (most <= 0.0)
-        return best;
-    for (size_t k = 0; k < l->n_live; k++)
-        if (l->rate[k] >= tied &&
-            (best == l->n_locations ||
-             stands_before(&l->locations[l->live[k]].look, &l->locations[best].look)))
-            best = l->live[k];
+    for (size_t lane = 0; lane < LANES && most > 0.0; lane++)
+        for (size_t k = lane; k < l->n_live && highest[lane] >= tied; k += LANES)
+            if (l->rate[k] >= tied &&
+                (best == l->n_locations ||
+                 stands_before(&l->locations[l->live[k]].look, &l->locations[best].look)))
+                best = l->live[k];
     return best;
 }
 
@@ -287,7 +310,7 @@ static void rule_out(struct looking *l, size_t location, const double weights[])
     for (size_t k = l->first_at[location]; k < l->first_at[location + 1]; k++) {
         const struct showing *s = &l->showings[l->showings_at[k]];
         double *left = &l->left[s->hypothesis * FAULTS_AT_ONCE + s->part];
-        if (weights[s->hypothesis] <= 0.0)
+        if (weights[s->hypothesis] <= 0.0 || l->steady[s->hypothesis])
             continue;
         *left = s->each_enough || *left < s->share ? 0.0 : *left - s->share;
         update_hypothesis(l, s->hypothesis, weights[s->hypothesis]);
@@ -312,19 +335,30 @@ static void forget_last(struct looking *l)
     l->n_live = 0;
 }
 
+static void list_live(struct looking *l, size_t location)
+{
+    if (l->slot[location] != NOT_LIVE)
+        return;
+    l->slot[location] = l->n_live;
+    l->live[l->n_live++] = location;
+    l->chance[location] = 0.0;
+}
+
 static void start_hypothesis(struct looking *l, size_t hypothesis, double weight)
 {
+    const size_t *first = &l->first_of_hypothesis[hypothesis];
+    if (l->steady[hypothesis]) {
+        for (size_t i = first[0]; i < first[1]; i++) {
+            list_live(l, l->showings[i].location);
+            l->chance[l->showings[i].location] += weight * l->showings[i].share;
+        }
+        return;
+    }
     for (size_t part = 0; part < FAULTS_AT_ONCE; part++)
         l->left[hypothesis * FAULTS_AT_ONCE + part] = 1.0;
-    for (size_t i = l->first_of_hypothesis[hypothesis]; i < l->first_of_hypothesis[hypothesis + 1];
-         i++) {
-        size_t location = l->showings[i].location;
+    for (size_t i = first[0]; i < first[1]; i++) {
         l->weight[i] = 0.0;
-        if (l->slot[location] != NOT_LIVE)
-            continue;
-        l->slot[location] = l->n_live;
-        l->live[l->n_live++] = location;
-        l->chance[location] = 0.0;
+        list_live(l, l->showings[i].location);
     }
     update_hypothesis(l, hypothesis, weight);
 }

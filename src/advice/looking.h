@@ -46,6 +46,7 @@ struct looking {
     double *chance; /* [location] the sum of that */
     bool *looked;   /* [location] */
     bool *reached;  /* [place] */
+    bool *steady;   /* [hypothesis] looks that show nothing leave its other shares alone */
     size_t n_live;
     size_t *live;   /* the locations where the belief at hand could show */
     double *rate;   /* [live] chance per minute there */
