@@ -9,6 +9,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
+#include <sys/stat.h>
 
 enum { FILE_MAX_BYTES = 1024 * 1024 };
 
@@ -20,6 +21,10 @@ struct source {
 static enum rf_status read_file(struct source *source, struct rf_error *error)
 {
     const char *path = source->name.bytes;
+    struct stat about;
+    if (stat(path, &about) == 0 && !S_ISREG(about.st_mode)) /* a pipe would keep us waiting */
+        return fail(error, RF_REFUSED, "%s: found %s; needs a model file", path,
+                    S_ISDIR(about.st_mode) ? "a folder" : "a device, pipe or socket");
     FILE *file = fopen(path, "rb");
     if (file == NULL)
         return fail(error, RF_IO, "%s: cannot be opened: %s", path, strerror(errno));

@@ -34,7 +34,7 @@ static struct shown display(const struct instrument_model *in, double ohms)
 }
 
 struct shown draw_shown(const struct instrument_model *in, bool reachable, double mean,
-                        gsl_rng *generator)
+                        bool heavy_tails, gsl_rng *generator)
 {
     bool wrong = gsl_rng_uniform(generator) < in->open_wrong;
     bool misread = gsl_rng_uniform(generator) < in->misread;
@@ -45,5 +45,7 @@ struct shown draw_shown(const struct instrument_model *in, bool reachable, doubl
     if (misread)
         return display(in, draw_misread(in, generator));
     double sigma = hypot(in->noise_floor, in->noise_relative * mean);
+    if (heavy_tails) /* the variance of t with ν degrees is ν/(ν − 2) */
+        return display(in, mean + sigma * gsl_ran_tdist(generator, 4.0) / sqrt(2.0));
     return display(in, mean + gsl_ran_gaussian_ziggurat(generator, sigma));
 }

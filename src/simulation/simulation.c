@@ -54,6 +54,9 @@ static enum rf_status draw_theta(struct truth *t, const struct simulation *simul
     generator_seed(generator, t->seed, "theta");
     for (int j = 0; j < t->wiring.n_parameters; j++)
         t->theta[j] = gsl_ran_gaussian_ziggurat(generator, 1.0);
+    if (t->departures.length_factor > 0)
+        for (size_t run = 0; run < n_runs(t->wiring.job); run++)
+            t->theta[(size_t)t->wiring.map.runs + run] *= t->departures.length_factor;
     for (size_t i = 0; i < t->hypothesis.n_faults && status == RF_OK; i++)
         if (fabs(simulation->value[i]) > 0)
             status = truth_set_value(t, i, simulation->value[i], error);
@@ -265,6 +268,7 @@ enum rf_status simulate(const struct rf_job *ring, const struct rf_models *model
     if (status == RF_OK) {
         t->seed = simulation->seed;
         t->models = models;
+        t->departures = simulation->departures;
         status = choose_hypothesis(t, ring, simulation, generator, error);
     }
     if (status == RF_OK)

@@ -34,6 +34,13 @@
 #include <stddef.h>
 #include <stdint.h>
 
+/* Where a simulated ring and meter depart from what the diagnosis assumes. Zeroed: nowhere. */
+struct departures {
+    bool heavy_tails;     /* Student's t, 4 degrees, of the same variance, in place of normal noise */
+    double contact_ohms;  /* mean Ω, exponential: in every conductor's way to every face */
+    double length_factor; /* runs are so many times as wrong (of the log) as recorded; 0: once */
+};
+
 /* What to simulate on a ring. Zeroed: a hypothesis and all else drawn, seed 0. */
 struct simulation {
     uint32_t seed;
@@ -42,6 +49,7 @@ struct simulation {
     double value[FAULTS_AT_ONCE]; /* Ω or m, each fault's parameter; 0: drawn */
     size_t defects;   /* where drawn: so many different ones; 0: one or none, from the priors */
     const char *name; /* `job`; NULL: "simulated-SEED" */
+    struct departures departures;
 };
 
 /* What a meter shows. */
@@ -54,6 +62,7 @@ struct shown {
  * `models`, which must outlive it. */
 struct truth {
     uint32_t seed;
+    struct departures departures; /* not written to a truth's file */
     const struct rf_models *models;
     struct rf_job *job;     /* the simulated job: the ring as recorded, what was read, `found` */
     struct cJSON *document; /* the same as a document, its readings with the display's digits */
@@ -142,6 +151,6 @@ enum rf_status draw_fault(const struct rf_job *job, const struct rf_models *mode
 /* A value from U, Ω; what the meter shows of a mean (Ω). */
 double draw_misread(const struct instrument_model *instrument, gsl_rng *generator);
 struct shown draw_shown(const struct instrument_model *instrument, bool reachable, double mean,
-                        gsl_rng *generator);
+                        bool heavy_tails, gsl_rng *generator);
 
 #endif

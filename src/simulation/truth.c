@@ -6,6 +6,7 @@
 #include "job/job_write.h"
 
 #include <cjson/cJSON.h>
+#include <gsl/gsl_randist.h>
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
@@ -88,6 +89,27 @@ static void name_answer(const struct rf_job *job, const struct measurement *m, s
              repeat);
 }
 
+/* The resistance of the faces a reading goes through, Ω. It stays what it is. */
+static double draw_contacts(const struct truth *t, const struct measurement *m, gsl_rng *generator)
+{
+    const struct setup *setup = &setups[m->setup];
+    const struct pair_members pair = pair_members[setup->pair];
+    double ohms = 0;
+    if (!(t->departures.contact_ohms > 0) || m->spot != SPOT_POINT)
+        return 0;
+    for (int conductor = 0; conductor < N_CONDUCTORS; conductor++) {
+        char name[JOB_MAX_ID + 64];
+        bool met = setup_is_pair(setup)
+                       ? conductor == (int)pair.first || conductor == (int)pair.second
+                       : conductor == (int)setup->conductor;
+        snprintf(name, sizeof name, "face %s %s", conductor_names[conductor],
+                 t->wiring.job->places[m->place].id);
+        generator_seed(generator, t->seed, name);
+        ohms += met ? gsl_ran_exponential(generator, t->departures.contact_ohms) : 0;
+    }
+    return ohms;
+}
+
 static enum rf_status show(const struct truth *t, struct forward *forward, const size_t repeats[],
                            gsl_rng *generator, struct shown shown[], struct rf_error *error)
 {
@@ -98,10 +120,12 @@ static enum rf_status show(const struct truth *t, struct forward *forward, const
         return fail(error, status, "%s: the readings cannot be computed", t->wiring.job->source);
     for (size_t i = 0; i < forward_measurements(forward); i++) {
         char name[JOB_MAX_ID + 64];
-        name_answer(t->wiring.job, forward_measurement(forward, i), repeats[i], name, sizeof name);
+        const struct measurement *m = forward_measurement(forward, i);
+        double mean = forward_mean(forward, i) + draw_contacts(t, m, generator);
+        name_answer(t->wiring.job, m, repeats[i], name, sizeof name);
         generator_seed(generator, t->seed, name);
-        shown[i] = draw_shown(&t->models->instrument, forward_reachable(forward, i),
-                              forward_mean(forward, i), generator);
+        shown[i] = draw_shown(&t->models->instrument, forward_reachable(forward, i), mean,
+                              t->departures.heavy_tails, generator);
     }
     return RF_OK;
 }

@@ -22,6 +22,8 @@
  * `±` is one standard error. Times are of the processor, one core, in process.
  */
 
+#include "calibration.h"
+
 #include "base/memory.h"
 #include "diagnosis/diagnosis.h"
 #include "simulation/simulation.h"
@@ -34,18 +36,13 @@
 #include <stdlib.h>
 #include <time.h>
 
-enum { N_BINS = 6, POINTS_TIMED = 10, UNSCREENED_EVERY = 10 };
-
-static const double bounds[N_BINS + 1] = {0, 0.2, 0.4, 0.6, 0.8, 0.95, 1};
+enum { POINTS_TIMED = 10, UNSCREENED_EVERY = 10 };
 
 struct score {
     size_t n, first, three, family, flagged, hypotheses;
     double log_posterior, log_listed;
     double screening; /* largest difference of a confidence without it */
-    struct bin {
-        size_t n, right;
-        double confidence;
-    } bins[N_BINS];
+    struct bin bins[N_BINS];
     double *milliseconds; /* [n] */
     double *timed;        /* [n_timed], of rings of POINTS_TIMED points */
     size_t n_timed;
@@ -58,14 +55,6 @@ static double now(void)
     return (double)time.tv_sec * 1e3 + (double)time.tv_nsec / 1e6;
 }
 
-static size_t bin_of(double confidence)
-{
-    size_t bin = 0;
-    while (bin + 1 < N_BINS && confidence >= bounds[bin + 1])
-        bin++;
-    return bin;
-}
-
 static const struct fault_family *family_of(const struct hypothesis *hypothesis)
 {
     return hypothesis->n_faults > 0 ? hypothesis->faults[0].family : &fault_family_none;
@@ -73,7 +62,6 @@ static const struct fault_family *family_of(const struct hypothesis *hypothesis)
 
 static void count(struct score *score, const struct rf_diagnosis *d, double milliseconds)
 {
-    struct bin *bin = &score->bins[bin_of(d->ranked[0].confidence)];
     bool right = d->found_rank == 0;
     score->first += right;
     score->three += d->found_rank < 3 && d->found_rank < d->n_ranked;
@@ -82,9 +70,7 @@ static void count(struct score *score, const struct rf_diagnosis *d, double mill
     score->hypotheses += d->n_hypotheses;
     score->log_posterior += log(fmax(d->found_confidence, 1e-7));
     score->log_listed += log(fmax(d->found_confidence, confidence_shown));
-    bin->n++;
-    bin->right += right;
-    bin->confidence += d->ranked[0].confidence;
+    count_in_bin(score->bins, d->ranked[0].confidence, right);
     score->milliseconds[score->n++] = milliseconds;
     if (rf_job_points(d->job) == POINTS_TIMED)
         score->timed[score->n_timed++] = milliseconds;
@@ -173,18 +159,16 @@ static double median(double values[], size_t n)
 
 static void print_calibration(const struct score *score)
 {
-    double error = 0, n = (double)score->n;
     for (size_t i = 0; i < N_BINS; i++) {
         const struct bin *bin = &score->bins[i];
         if (bin->n == 0)
             continue;
         double in_bin = (double)bin->n;
-        error += fabs(bin->confidence - (double)bin->right) / n;
         printf("  first-ranked %.2f to %.2f    %5zu jobs, mean confidence %.3f, right %.3f\n",
                bounds[i], bounds[i + 1], bin->n, bin->confidence / in_bin,
                (double)bin->right / in_bin);
     }
-    printf("%-28s %.3f\n", "calibration error", error);
+    printf("%-28s %.3f\n", "calibration error", calibration_error(score->bins));
 }
 
 static void print_score(const char *title, struct score *score)

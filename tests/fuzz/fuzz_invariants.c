@@ -12,6 +12,9 @@
  *     not read here. `transposed` is left out: where the two conductors differ, which of them
  *     lands on the other's terminal with its resistance depends on the direction.
  *
+ *     So is a job with a `highest`: a fit may settle on another point as the highest one, and
+ *     from which side it comes decides.
+ *
  * The last two not where the misfit test says that nothing explains the readings: which of them a fit
  * then writes off can hang on the last bit.
  *
@@ -428,6 +431,14 @@ static const struct rf_models *shipped(void)
     return models;
 }
 
+static bool reads_highest(const struct made *made)
+{
+    for (size_t i = 0; i < made->n_read; i++)
+        if (made->read[i].spot == SPOT_HIGHEST)
+            return true;
+    return false;
+}
+
 static void compare(const struct made *made,
                     const struct rf_diagnosis *screened, const struct rf_diagnosis *whole,
                     const struct listing *as)
@@ -442,7 +453,7 @@ static void compare(const struct made *made,
         ;
     else if (as->reordered)
         expect_near(whole, other, 1e-3, "another order");
-    else
+    else if (!reads_highest(made))
         expect_mirrored(made, as, whole, other);
     rf_diagnosis_destroy(other);
     rf_job_destroy(listed);

@@ -88,7 +88,7 @@ START_TEST(meter_noise)
     double mean = 1, sigma = instrument_sigma(&in, mean), sum = 0, squares = 0;
     generator_seed(generator, 1, "meter");
     for (size_t i = 0; i < N; i++) {
-        struct shown shown = draw_shown(&in, true, mean, generator);
+        struct shown shown = draw_shown(&in, true, mean, false, generator);
         ck_assert(!shown.open);
         ck_assert_double_le(fabs(shown.ohms * 100 - round(shown.ohms * 100)), 1e-9);
         sum += shown.ohms - mean;
@@ -104,12 +104,12 @@ START_TEST(meter_range)
     struct instrument_model in = models->instrument;
     in.misread = in.open_wrong = 0;
     generator_seed(generator, 2, "meter");
-    struct shown low = draw_shown(&in, true, -1, generator);
+    struct shown low = draw_shown(&in, true, -1, false, generator);
     ck_assert(!low.open);
     ck_assert_double_eq(low.ohms, 0);
     ck_assert(!signbit(low.ohms));
-    ck_assert(draw_shown(&in, true, 150, generator).open);
-    ck_assert(draw_shown(&in, false, 0, generator).open);
+    ck_assert(draw_shown(&in, true, 150, false, generator).open);
+    ck_assert(draw_shown(&in, false, 0, false, generator).open);
 }
 END_TEST
 
@@ -124,10 +124,10 @@ START_TEST(meter_errors)
     double far = 0, open = 0, finite = 0;
     generator_seed(generator, 3, "meter");
     for (size_t i = 0; i < N; i++) {
-        struct shown shown = draw_shown(in, true, mean, generator);
+        struct shown shown = draw_shown(in, true, mean, false, generator);
         open += shown.open;
         far += !shown.open && fabs(shown.ohms - mean) > near;
-        finite += !draw_shown(in, false, 0, generator).open;
+        finite += !draw_shown(in, false, 0, false, generator).open;
     }
     assert_share(open, N, 0.001);
     assert_share(finite, N, 0.001);
