@@ -199,8 +199,9 @@ static enum rf_status choose_plans(struct planning *p, struct rf_error *error)
     while (n > 0 && advice->look_now - choices[n - 1].value < worth_saving)
         n--;
     advice->measure_first = n > 0 ? choices[0].value : advice->look_now;
-    bool look_first = can_look && (n == 0 || measuring_look_first(p->measuring, p->weights) <
-                                                 choices[0].value);
+    bool look_first =
+        can_look && (n == 0 || measuring_look_first(p->measuring, p->weights, choices[0].value) <
+                                   choices[0].value);
     if (look_first)
         ok = add_look_plan(p);
     for (size_t i = 0; i < n && i < READ_PLANS_MOST && ok; i++)

@@ -11,11 +11,14 @@
 enum { MOST_DEPTH = 3 };
 static const size_t beam[MOST_DEPTH + 1] = {0, 1, 3, 4}; /* by the depth left */
 enum { SETUPS_DEEPENED = 6 };
+/* Where more hypotheses than this carry weight, none carries much: three readings tell little more
+ * than two of what to do first, and the search would grow with their square. */
+enum { SEVERAL_HYPOTHESES = 40, DEPTH_FOR_MORE = 2, SETUPS_FOR_MORE = 3 };
 
 /* Predictions nearer than this many of their σ are one outcome. */
 static const double one_outcome = 1.0;
 /* Hypotheses below this share of the belief are left out of a reading's outcomes. */
-static const double negligible = 1e-4;
+static const double negligible = 5e-4;
 
 /* The scratch of one level of the search. */
 struct level {
@@ -29,6 +32,7 @@ struct measuring {
     struct looking *looking;
     const struct predictive *predictive;
     size_t n_hypotheses, n;
+    size_t depth, setups_deepened;
     size_t *sorted;     /* [candidate · n_hypotheses] hypotheses by their mean, over range last */
     double *known;      /* [hypothesis] minutes of looking if it were known */
     size_t first[N_SETUPS + 1]; /* candidates of a set-up: first[s] … first[s+1]−1 */
@@ -100,6 +104,8 @@ struct measuring *measuring_create(const struct rf_diagnosis *diagnosis, struct 
     m->looking = looking;
     m->predictive = predictive;
     m->n_hypotheses = h;
+    m->depth = h > SEVERAL_HYPOTHESES ? DEPTH_FOR_MORE : MOST_DEPTH;
+    m->setups_deepened = h > SEVERAL_HYPOTHESES ? SETUPS_FOR_MORE : SETUPS_DEEPENED;
     m->n = n;
     m->sorted = NEW_ARRAY(size_t, n * h);
     m->known = NEW_ARRAY(double, h);
@@ -329,12 +335,12 @@ static int by_value(const void *a, const void *b)
 /* Looks into a set-up as deep as it goes, from its best candidates one reading ahead. */
 static void deepen(struct measuring *m, const double weights[], double total, struct choice *choice)
 {
-    struct level *level = &m->levels[MOST_DEPTH];
-    size_t n = survey(m, weights, total, choice->setup, true, beam[MOST_DEPTH], INFINITY, level);
+    struct level *level = &m->levels[m->depth];
+    size_t n = survey(m, weights, total, choice->setup, true, beam[m->depth], INFINITY, level);
     double change = cost_of_change(m, choice->setup);
     for (size_t k = 0; k < n; k++) {
         size_t c = level->order[k];
-        double value = change + value_after(m, weights, total, c, MOST_DEPTH, true,
+        double value = change + value_after(m, weights, total, c, m->depth, true,
                                             choice->value - change);
         if (value < choice->value) {
             choice->value = value;
@@ -359,7 +365,7 @@ size_t measuring_choose(struct measuring *m, const double weights[], struct choi
         choices[n++] = (struct choice){setup, c, change + level->value[c]};
     }
     qsort(choices, n, sizeof *choices, by_value);
-    for (size_t i = 0; i < n && i < SETUPS_DEEPENED; i++)
+    for (size_t i = 0; i < n && i < m->setups_deepened; i++)
         deepen(m, weights, total, &choices[i]);
     qsort(choices, n, sizeof *choices, by_value);
     size_t saving = 0;
@@ -368,7 +374,7 @@ size_t measuring_choose(struct measuring *m, const double weights[], struct choi
     return saving;
 }
 
-double measuring_look_first(struct measuring *m, const double weights[])
+double measuring_look_first(struct measuring *m, const double weights[], double to_beat)
 {
     struct choice choices[N_SETUPS];
     double total = sum_of(weights, m->n_hypotheses), minutes = 0.0;
@@ -379,7 +385,9 @@ double measuring_look_first(struct measuring *m, const double weights[])
     memcpy(after, weights, m->n_hypotheses * sizeof *after);
     looking_rule_out(m->looking, location, after);
     double left = sum_of(after, m->n_hypotheses), value = 0.0;
-    if (left > 0.0) {
+    if (left > 0.0)
+        value = best_conceivable(m, after, left);
+    if (left > 0.0 && minutes + value * left / total < to_beat) {
         value = looking_expected(m->looking, after, NULL, 0, NULL);
         if (measuring_choose(m, after, choices) > 0)
             value = choices[0].value;

@@ -44,9 +44,9 @@ size_t measuring_choose(struct measuring *measuring, const double weights[],
 /*
  * Expected minutes to the find by looking at the first place in the order of looking and, where
  * nothing shows, going on with the best of looking and reading. INFINITY where there is nothing to
- * look at.
+ * look at; some value above `to_beat` where it cannot be below it.
  */
-double measuring_look_first(struct measuring *measuring, const double weights[]);
+double measuring_look_first(struct measuring *measuring, const double weights[], double to_beat);
 
 /* The readings that would follow `candidate` in its set-up if the likeliest came out each time, as
  * long as one saves anything: up to `most` candidates; returns how many. */
