@@ -79,6 +79,8 @@ static enum rf_status try_separator(struct long_reader *reader, char separator, 
                  "%s: row 1: found no column \"%s\"; needs the names of the columns, job, setup, "
                  "place and value, or which they are",
                  reader->source, missing);
+    } else if (status == RF_OK) { /* a byte order mark and no more */
+        fail(error, RF_SYNTAX, "%s: found nothing; needs a table", reader->source);
     }
     csv_close(csv);
     return status == RF_SYNTAX ? RF_OK : status;
