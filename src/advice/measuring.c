@@ -13,12 +13,12 @@ static const size_t beam[MOST_DEPTH + 1] = {0, 1, 3, 4}; /* by the depth left */
 enum { SETUPS_DEEPENED = 6 };
 /* Where more hypotheses than this carry weight, none carries much: three readings tell little more
  * than two of what to do first, and the search would grow with their square. */
-enum { SEVERAL_HYPOTHESES = 40, DEPTH_FOR_MORE = 2, SETUPS_FOR_MORE = 3 };
+enum { SEVERAL_HYPOTHESES = 40, DEPTH_FOR_MORE = 2 };
 
 /* Predictions nearer than this many of their σ are one outcome. */
 static const double one_outcome = 1.0;
 /* Hypotheses below this share of the belief are left out of a reading's outcomes. */
-static const double negligible = 5e-4;
+static const double negligible = 1e-4;
 
 /* The scratch of one level of the search. */
 struct level {
@@ -32,7 +32,7 @@ struct measuring {
     struct looking *looking;
     const struct predictive *predictive;
     size_t n_hypotheses, n;
-    size_t depth, setups_deepened;
+    size_t depth;
     size_t *sorted;     /* [candidate · n_hypotheses] hypotheses by their mean, over range last */
     double *known;      /* [hypothesis] minutes of looking if it were known */
     size_t first[N_SETUPS + 1]; /* candidates of a set-up: first[s] … first[s+1]−1 */
@@ -105,7 +105,6 @@ struct measuring *measuring_create(const struct rf_diagnosis *diagnosis, struct 
     m->predictive = predictive;
     m->n_hypotheses = h;
     m->depth = h > SEVERAL_HYPOTHESES ? DEPTH_FOR_MORE : MOST_DEPTH;
-    m->setups_deepened = h > SEVERAL_HYPOTHESES ? SETUPS_FOR_MORE : SETUPS_DEEPENED;
     m->n = n;
     m->sorted = NEW_ARRAY(size_t, n * h);
     m->known = NEW_ARRAY(double, h);
@@ -365,7 +364,7 @@ size_t measuring_choose(struct measuring *m, const double weights[], struct choi
         choices[n++] = (struct choice){setup, c, change + level->value[c]};
     }
     qsort(choices, n, sizeof *choices, by_value);
-    for (size_t i = 0; i < n && i < m->setups_deepened; i++)
+    for (size_t i = 0; i < n && i < SETUPS_DEEPENED; i++)
         deepen(m, weights, total, &choices[i]);
     qsort(choices, n, sizeof *choices, by_value);
     size_t saving = 0;
