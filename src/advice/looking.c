@@ -85,16 +85,6 @@ static size_t locate(struct listing *listing, const struct look *look)
     return l->n_locations++;
 }
 
-static bool looked_at_already(const struct rf_job *job, const struct look *look)
-{
-    if (look->where == LOOK_AT_BOARD)
-        return job->board_opened;
-    if (look->where == LOOK_IN_RUN)
-        return false;
-    return look->kind == LOOK_OPEN ? job->places[look->index].opened
-                                   : job->places[look->index].checked;
-}
-
 static void list_showing(void *context, const struct look *look)
 {
     struct listing *listing = context;
@@ -106,7 +96,7 @@ static void list_showing(void *context, const struct look *look)
         return;
     }
     double *left = &l->left[listing->hypothesis * FAULTS_AT_ONCE + listing->part];
-    if (looked_at_already(listing->diagnosis->job, look)) {
+    if (looked_at(listing->diagnosis->job, look)) {
         *left = listing->each_enough ? 0.0 : *left - look->share;
         return;
     }

@@ -304,7 +304,7 @@ static double value_of(struct measuring *m, const double weights[], size_t setup
         return looking_expected(m->looking, weights, NULL, 0, NULL);
     double total = sum_of(weights, m->n_hypotheses);
     double best = looking_expected(m->looking, weights, NULL, 0, NULL);
-    if ( best - best_conceivable(m, weights, total) <= cheapest_reading(m))
+    if (best - best_conceivable(m, weights, total) <= cheapest_reading(m))
         return best;
     struct level *level = &m->levels[depth];
     size_t n = survey(m, weights, total, setup, first, beam[depth],

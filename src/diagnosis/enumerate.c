@@ -76,16 +76,6 @@ struct looked {
     double share; /* of the fault that would have shown where somebody looked */
 };
 
-bool looked_at(const struct rf_job *job, const struct look *look)
-{
-    if (look->where == LOOK_AT_BOARD)
-        return job->board_opened;
-    if (look->where == LOOK_IN_RUN)
-        return false;
-    const struct place *place = &job->places[look->index];
-    return look->kind == LOOK_OPEN ? place->opened : place->checked;
-}
-
 static void count_looked(void *context, const struct look *look)
 {
     struct looked *looked = context;

@@ -25,8 +25,7 @@ struct candidates {
 enum rf_status candidates_enumerate(struct candidates *candidates, const struct rf_job *job,
                                     const struct rf_models *models, struct rf_error *error);
 void candidates_finish(struct candidates *candidates); /* takes zeroed */
-/* Whether the job says that somebody looked there; the share of the fault that looks there leave. */
-bool looked_at(const struct rf_job *job, const struct look *look);
+/* The share of the fault that is left by the places the job says were looked at. */
 double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
                            const struct rf_models *models);
 

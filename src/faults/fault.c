@@ -228,3 +228,13 @@ enum rf_status fault_check_models(const struct rf_models *models, struct rf_erro
     }
     return RF_OK;
 }
+
+bool looked_at(const struct rf_job *job, const struct look *look)
+{
+    if (look->where == LOOK_AT_BOARD)
+        return job->board_opened;
+    if (look->where == LOOK_IN_RUN)
+        return false;
+    const struct place *place = &job->places[look->index];
+    return look->kind == LOOK_OPEN ? place->opened : place->checked;
+}

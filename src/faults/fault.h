@@ -152,6 +152,9 @@ void fault_looks(const struct fault *fault, const struct rf_job *job,
                  const struct rf_models *models, look_callback *callback, void *context);
 enum danger fault_danger(const struct fault *fault, const struct rf_job *job);
 
+/* Whether the job says that somebody has looked there already. */
+bool looked_at(const struct rf_job *job, const struct look *look);
+
 /* Checks the models' rows against the list: a row for every family and for nothing else, its kinds
  * and shares named as the family knows them, a parameter exactly where it has one. RF_REFUSED. */
 enum rf_status fault_check_models(const struct rf_models *models, struct rf_error *error);

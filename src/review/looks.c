@@ -43,24 +43,10 @@ static size_t step_of(const struct counting *counting, const struct look *look)
     return i;
 }
 
-static bool looked_at_already(const struct rf_job *job, const struct look *look)
-{
-    switch (look->where) {
-    case LOOK_AT_BOARD:
-        return job->board_opened;
-    case LOOK_IN_RUN:
-        return false;
-    case LOOK_AT_PLACE:
-        break;
-    }
-    const struct place *place = &job->places[look->index];
-    return look->kind == LOOK_OPEN ? place->opened : place->checked;
-}
-
 static void count_look(void *context, const struct look *look)
 {
     struct counting *counting = context;
-    if (looked_at_already(counting->job, look))
+    if (looked_at(counting->job, look))
         return;
     size_t step = step_of(counting, look);
     counting->share[step < counting->n_steps ? bin_of(step) : LOOK_BIN_NEVER] += look->share;
