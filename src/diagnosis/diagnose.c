@@ -82,8 +82,9 @@ static const double screening_trusted = 0.2;
 static enum rf_status diagnose_with(struct rf_diagnosis *diagnosis, struct candidates *candidates,
                                     struct fitter *fitter, struct rf_error *error)
 {
-    enum rf_status status =
-        rank_and_test(diagnosis, candidates, fitter, diagnosis->screened, error);
+    enum rf_status status = check_range(diagnosis, fitter, error);
+    if (status == RF_OK)
+        status = rank_and_test(diagnosis, candidates, fitter, diagnosis->screened, error);
     if (status == RF_OK && diagnosis->screened && diagnosis->misfit.p < screening_trusted)
         status = rank_and_test(diagnosis, candidates, fitter, false, error);
     if (status == RF_OK)

@@ -11,6 +11,8 @@
 /* From which chance on something is said, and how many lines of a list. */
 static const double danger_said = 0.10, check_said = 0.02, finding_said = 0.01;
 const double place_said = 0.02;
+/* Ω, what a meter does not show as 0.00 by its noise. */
+static const double not_nothing = 0.05;
 enum { CHECKS_MOST = 6, PLACES_MOST = 5, FINDINGS_MOST = 6, SUSPECTS_MOST = 6, BLIND_INLINE = 3 };
 enum { BLIND_MOST = 12 };
 
@@ -201,8 +203,43 @@ static void check_readings(const struct rf_diagnosis *diagnosis, struct said *sa
     }
 }
 
+/* What the ring without its fault would show at most, of what has a path; -INFINITY: nothing. */
+static double most_of_sound_ring(const struct rf_diagnosis *diagnosis)
+{
+    double most = -INFINITY;
+    for (size_t i = 0; i < diagnosis->job->n_readings; i++)
+        most = fmax(most, diagnosis->sound[i]); /* fmax passes over NAN */
+    return most;
+}
+
+/* A lead that has come off, or probes that touch, make every reading the same, and none of the faults
+ * compared is that. Common practice, no source. */
+static void check_meter(const struct rf_diagnosis *diagnosis, struct said *said)
+{
+    const struct rf_job *job = diagnosis->job;
+    double most = most_of_sound_ring(diagnosis);
+    size_t open = 0, zero = 0;
+    for (size_t i = 0; i < job->n_readings; i++) {
+        open += job->readings[i].open;
+        zero += !job->readings[i].open && job->readings[i].ohms <= 0;
+    }
+    struct text words = {0};
+    if (job->n_readings < 2)
+        return;
+    if (open == job->n_readings && most > -INFINITY)
+        text_add(&words, "prove the meter: every reading is over range. Touch the probes together: "
+                         "it must show next to nothing");
+    else if (zero == job->n_readings && most >= not_nothing)
+        text_add(&words, "prove the meter: every reading is 0.00" NO_BREAK
+                         "Ω. Part the probes: it must show over range; and null the leads again");
+    else
+        return;
+    said_add(said, LINE_UNDER, 0, 0, &words);
+}
+
 void say_checks(const struct rf_diagnosis *diagnosis, struct said *said)
 {
+    check_meter(diagnosis, said);
     check_faces(diagnosis, said);
     check_board(diagnosis, said);
     check_readings(diagnosis, said);
