@@ -26,7 +26,8 @@ struct seeker {
     const struct rf_diagnosis *diagnosis;
     const struct predictive *predictive;
     struct forward *forward; /* measures what has been read, then the candidates */
-    size_t n_read, n, d;     /* readings, candidates, parameters of the ring */
+    size_t n_read, n, d;     /* what has been read, each once; candidates; parameters of the ring */
+    double *times;           /* [read] how often */
     struct wiring wiring;
     double *theta;    /* the ring's, of the best fit; faults at their median */
     double *sound;    /* [measurement] Ω without fault; NAN: over range */
@@ -40,6 +41,7 @@ static void finish_seeker(struct seeker *s)
 {
     forward_destroy(s->forward);
     wiring_finish(&s->wiring);
+    free(s->times);
     free(s->theta);
     free(s->sound);
     free(s->jacobian);
@@ -79,7 +81,7 @@ static bool look_at_ring(struct seeker *s)
         const double *row = s->jacobian + i * s->d;
         if (isnan(s->sound[i]))
             continue;
-        double sigma = noise_at(s, s->sound[i]), weight = 1.0 / (sigma * sigma);
+        double sigma = noise_at(s, s->sound[i]), weight = s->times[i] / (sigma * sigma);
         for (size_t j = 0; j < s->d; j++)
             for (size_t k = j; k < s->d; k++)
                 s->factor[j * s->d + k] += weight * row[j] * row[k];
@@ -87,15 +89,25 @@ static bool look_at_ring(struct seeker *s)
     return cholesky_factor(s->factor, s->d, s->d);
 }
 
-static struct forward *measure_all(const struct seeker *s)
+/* Lists what has been read, each once: repeats stand behind the reading they repeat. */
+static void list_read(struct seeker *s, struct measurement list[])
 {
     const struct rf_job *job = s->diagnosis->job;
-    struct measurement *all = NEW_ARRAY(struct measurement, s->n_read + s->n);
+    for (size_t i = 0; i < job->n_readings; i++) {
+        const struct reading *r = &job->readings[i];
+        struct measurement m = {r->setup, r->spot, r->place};
+        if (s->n_read == 0 || !measurement_equal(&list[s->n_read - 1], &m))
+            list[s->n_read++] = m;
+        s->times[s->n_read - 1] += 1.0;
+    }
+}
+
+static struct forward *measure_all(struct seeker *s)
+{
+    struct measurement *all = NEW_ARRAY(struct measurement, s->diagnosis->job->n_readings + s->n);
     if (all == NULL)
         return NULL;
-    for (size_t i = 0; i < s->n_read; i++)
-        all[i] = (struct measurement){job->readings[i].setup, job->readings[i].spot,
-                                      job->readings[i].place};
+    list_read(s, all);
     memcpy(all + s->n_read, s->predictive->candidates, s->n * sizeof *all);
     struct forward *forward = forward_create(&s->diagnosis->ring, all, s->n_read + s->n);
     free(all);
@@ -105,16 +117,16 @@ static struct forward *measure_all(const struct seeker *s)
 static enum rf_status init_seeker(struct seeker *s, struct rf_error *error)
 {
     const struct rf_diagnosis *d = s->diagnosis;
-    s->n_read = d->job->n_readings;
     s->n = s->predictive->n;
     s->d = (size_t)d->ring.map.n_common;
+    s->times = NEW_ARRAY(double, d->job->n_readings);
+    s->forward = s->times != NULL ? measure_all(s) : NULL;
     s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
     s->sound = NEW_ARRAY(double, s->n_read + s->n);
     s->jacobian = NEW_ARRAY(double, (s->n_read + s->n) * s->d);
     s->factor = NEW_ARRAY(double, s->d * s->d);
     s->shift = NEW_ARRAY(double, s->d);
     s->shown = NEW_ARRAY(double, s->n);
-    s->forward = measure_all(s);
     if (s->theta == NULL || s->sound == NULL || s->jacobian == NULL || s->factor == NULL ||
         s->shift == NULL || s->shown == NULL || s->forward == NULL)
         return fail_memory(error);
@@ -134,7 +146,7 @@ static void shift_ring(struct seeker *s)
         double mean = mean_or_nan(s, i), sigma = noise_at(s, s->sound[i]);
         if (isnan(mean) || isnan(s->sound[i]))
             continue;
-        double pull = (mean - s->sound[i]) / (sigma * sigma);
+        double pull = s->times[i] * (mean - s->sound[i]) / (sigma * sigma);
         for (size_t j = 0; j < s->d && pull != 0.0; j++)
             s->shift[j] += pull * s->jacobian[i * s->d + j];
     }
@@ -155,7 +167,8 @@ static bool shows_at(const struct seeker *s, size_t candidate)
     return fabs(mean - expected) > shows * sigma;
 }
 
-static enum rf_status try_member(struct seeker *s, const struct fault *fault, struct rf_error *error)
+static enum rf_status try_member(struct seeker *s, const struct fault *fault,
+                                 struct rf_error *error)
 {
     struct hypothesis hypothesis = {.faults = {*fault}, .n_faults = 1};
     wiring_copy(&s->wiring, &s->diagnosis->ring);

@@ -21,18 +21,20 @@ static const double better_part = 0.5;
 struct sight {
     const struct rf_diagnosis *diagnosis;
     const struct observation *observations;
-    size_t n, d;         /* readings; parameters of the recorded ring */
-    double *mean;        /* [reading] Ω, of the ring without fault; NAN: over range */
-    double *sigma;       /* [reading] Ω */
-    double *jacobian;    /* n × d, in σ */
-    double *factor;      /* d × d, of I + JᵀJ */
-    double *delta, *u;   /* [reading], [parameter] */
-    double *theta;       /* [parameter, with faults'] */
+    size_t n, d;       /* what was measured, each once; parameters of the recorded ring */
+    double *times;     /* [measured] how many readings of it there are */
+    double *mean;      /* [measured] Ω, of the ring without fault; NAN: over range */
+    double *sigma;     /* [measured] Ω, of its readings together */
+    double *jacobian;  /* n × d, in σ */
+    double *factor;    /* d × d, of I + JᵀJ */
+    double *delta, *u; /* [measured], [parameter] */
+    double *theta;     /* [parameter, with faults'] */
     struct wiring wiring;
 };
 
 static void finish_sight(struct sight *s)
 {
+    free(s->times);
     free(s->mean);
     free(s->sigma);
     free(s->jacobian);
@@ -47,8 +49,10 @@ static enum rf_status init_sight(struct sight *s, const struct rf_diagnosis *dia
                                  const struct fitter *fitter, struct rf_error *error)
 {
     s->diagnosis = diagnosis;
-    s->n = fitter_observations(fitter, &s->observations);
+    size_t n_readings = fitter_observations(fitter, &s->observations);
+    s->n = forward_measurements(fitter_forward(fitter));
     s->d = (size_t)diagnosis->ring.map.n_common;
+    s->times = NEW_ARRAY(double, s->n);
     s->mean = NEW_ARRAY(double, s->n);
     s->sigma = NEW_ARRAY(double, s->n);
     s->jacobian = NEW_ARRAY(double, s->n * s->d);
@@ -56,9 +60,11 @@ static enum rf_status init_sight(struct sight *s, const struct rf_diagnosis *dia
     s->delta = NEW_ARRAY(double, s->n);
     s->u = NEW_ARRAY(double, s->d);
     s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
-    if (s->mean == NULL || s->sigma == NULL || s->jacobian == NULL || s->factor == NULL ||
-        s->delta == NULL || s->u == NULL || s->theta == NULL)
+    if (s->times == NULL || s->mean == NULL || s->sigma == NULL || s->jacobian == NULL ||
+        s->factor == NULL || s->delta == NULL || s->u == NULL || s->theta == NULL)
         return fail_memory(error);
+    for (size_t i = 0; i < n_readings; i++)
+        s->times[s->observations[i].measurement] += 1.0;
     memcpy(s->theta, diagnosis->ranked[0].theta, s->d * sizeof *s->theta);
     return wiring_init(&s->wiring, diagnosis->job, diagnosis->models, error);
 }
@@ -72,15 +78,15 @@ static bool look_at_ring(struct sight *s, struct forward *forward)
     memset(s->factor, 0, s->d * s->d * sizeof *s->factor);
     for (size_t j = 0; j < s->d; j++)
         s->factor[j * s->d + j] = 1.0;
-    for (size_t i = 0; i < s->n; i++) {
-        size_t m = s->observations[i].measurement;
-        double *row = s->jacobian + i * s->d;
-        s->mean[i] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;
-        if (isnan(s->mean[i]))
+    for (size_t m = 0; m < s->n; m++) {
+        double *row = s->jacobian + m * s->d;
+        s->mean[m] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;
+        if (isnan(s->mean[m]))
             continue;
-        s->sigma[i] = instrument_sigma(&s->diagnosis->models->instrument, s->mean[i]);
+        s->sigma[m] =
+            instrument_sigma(&s->diagnosis->models->instrument, s->mean[m]) / sqrt(s->times[m]);
         for (size_t j = 0; j < s->d; j++)
-            row[j] = forward_gradient(forward, m)[j] / s->sigma[i];
+            row[j] = forward_gradient(forward, m)[j] / s->sigma[m];
         for (size_t j = 0; j < s->d; j++)
             for (size_t k = j; k < s->d; k++)
                 s->factor[j * s->d + k] += row[j] * row[k];
@@ -114,14 +120,13 @@ static enum rf_status would_show(struct sight *s, struct forward *forward,
         forward_evaluate(forward, s->theta) != RF_OK)
         return RF_NUMERICAL;
     *seen = false;
-    for (size_t i = 0; i < s->n; i++) {
-        size_t m = s->observations[i].measurement;
+    for (size_t m = 0; m < s->n; m++) {
         bool path = forward_reachable(forward, m);
-        if (path == isnan(s->mean[i])) { /* a path lost or made */
+        if (path == isnan(s->mean[m])) { /* a path lost or made */
             *seen = true;
             return RF_OK;
         }
-        s->delta[i] = path ? (forward_mean(forward, m) - s->mean[i]) / s->sigma[i] : 0.0;
+        s->delta[m] = path ? (forward_mean(forward, m) - s->mean[m]) / s->sigma[m] : 0.0;
     }
     *seen = unexplained(s) > shows;
     return RF_OK;
@@ -132,8 +137,7 @@ struct kind_count {
     size_t members, unseen;
 };
 
-static struct kind_count *count_kind(struct kind_count *kinds, size_t *n,
-                                     const struct fault *fault)
+static struct kind_count *count_kind(struct kind_count *kinds, size_t *n, const struct fault *fault)
 {
     for (size_t k = 0; k < *n; k++)
         if (fault_same_kind(kinds[k].example, fault))
@@ -190,8 +194,8 @@ enum rf_status seek_blind_spots(struct rf_diagnosis *diagnosis, const struct can
         if (!seen && kind->unseen++ == 0)
             kind->example = &hypothesis->faults[0];
     }
-    for (size_t i = 0; i < sight.n && status == RF_OK; i++)
-        diagnosis->sound[i] = sight.mean[i];
+    for (size_t i = 0; i < diagnosis->job->n_readings && status == RF_OK; i++)
+        diagnosis->sound[i] = sight.mean[sight.observations[i].measurement];
     if (status == RF_OK)
         status = tell_blind_kinds(diagnosis, kinds, n_kinds, error);
     finish_sight(&sight);
