@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "cli/command.h"
 
-#include "faults/fault.h"
+#include "diagnosis/diagnosis.h"
 
 struct context {
     const struct rf_models *models;
@@ -18,6 +18,8 @@ static enum rf_status check(const struct rf_job *job, const struct rf_models *mo
 {
     struct wiring ring = {0};
     enum rf_status status = wiring_init(&ring, job, models, error);
+    if (status == RF_OK)
+        status = check_range(&ring, error);
     wiring_finish(&ring);
     if (status == RF_OK && rf_job_has_found(job)) {
         struct hypothesis found;

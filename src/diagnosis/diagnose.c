@@ -82,9 +82,8 @@ static const double screening_trusted = 0.2;
 static enum rf_status diagnose_with(struct rf_diagnosis *diagnosis, struct candidates *candidates,
                                     struct fitter *fitter, struct rf_error *error)
 {
-    enum rf_status status = check_range(diagnosis, fitter, error);
-    if (status == RF_OK)
-        status = rank_and_test(diagnosis, candidates, fitter, diagnosis->screened, error);
+    enum rf_status status =
+        rank_and_test(diagnosis, candidates, fitter, diagnosis->screened, error);
     if (status == RF_OK && diagnosis->screened && diagnosis->misfit.p < screening_trusted)
         status = rank_and_test(diagnosis, candidates, fitter, false, error);
     if (status == RF_OK)
@@ -125,6 +124,8 @@ enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models
     struct candidates candidates = {0};
     struct fitter *fitter = NULL;
     enum rf_status status = wiring_init(&diagnosis->ring, job, models, error);
+    if (status == RF_OK)
+        status = check_range(&diagnosis->ring, error);
     if (status == RF_OK)
         status = read_found(diagnosis, error);
     if (status == RF_OK) {

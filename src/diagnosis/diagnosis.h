@@ -107,6 +107,11 @@ bool fault_same_kind(const struct fault *one, const struct fault *other);
 enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models, bool screen,
                         struct rf_diagnosis **diagnosis, struct rf_error *error);
 
+/* Whether over range tells anything wherever the job has it: RF_REFUSED, with the reading, where the
+ * ring as recorded could read beyond the meter's range itself. `diagnose` begins with this.
+ * RF_NUMERICAL, RF_MEMORY. */
+enum rf_status check_range(const struct wiring *ring, struct rf_error *error);
+
 /* Hypotheses below this are not listed. */
 extern const double confidence_shown;
 

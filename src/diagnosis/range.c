@@ -1,7 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "diagnosis/diagnosis.h"
+
 #include "base/error.h"
 #include "base/memory.h"
-#include "diagnosis/steps.h"
 
 #include <math.h>
 
@@ -21,43 +22,64 @@ static double highest_expected(const struct forward *forward, size_t measurement
     return forward_mean(forward, measurement) + reach * sqrt(square);
 }
 
-static enum rf_status refuse(const struct rf_diagnosis *diagnosis, const struct reading *reading,
+static enum rf_status refuse(const struct wiring *ring, const struct measurement *m,
                              double expected, struct rf_error *error)
 {
-    const struct rf_job *job = diagnosis->job;
+    const struct reading reading = {.setup = m->setup, .spot = m->spot, .place = m->place};
     return fail(
         error, RF_REFUSED,
         "%s: readings.%s.%s: found \"open\"; needs to be left out, because this ring, wired "
         "as recorded, could read %.0f Ω there, and the meter reads to %.1f Ω: over range "
         "would show nothing",
-        job->source, setups[reading->setup].name, reading_key(job, reading), expected,
-        diagnosis->models->instrument.over_range);
+        ring->job->source, setups[m->setup].name, reading_key(ring->job, &reading), expected,
+        ring->models->instrument.over_range);
 }
 
-enum rf_status check_range(const struct rf_diagnosis *diagnosis, struct fitter *fitter,
-                           struct rf_error *error)
+/* What is over range in the job, repeats in a row once; how many. */
+static size_t list_open(const struct rf_job *job, struct measurement list[])
 {
-    const struct observation *observations = NULL;
-    struct forward *forward = fitter_forward_to_use(fitter);
-    size_t n = fitter_observations(fitter, &observations);
-    size_t d = (size_t)diagnosis->ring.n_parameters;
-    double *theta = NEW_ARRAY(double, d);
-    if (theta == NULL)
-        return fail_memory(error);
-    enum rf_status status = forward_analyse(forward, &diagnosis->ring);
+    size_t n = 0;
+    for (size_t i = 0; i < job->n_readings; i++) {
+        const struct reading *r = &job->readings[i];
+        struct measurement m = {r->setup, r->spot, r->place};
+        if (r->open && (n == 0 || !measurement_equal(&list[n - 1], &m)))
+            list[n++] = m;
+    }
+    return n;
+}
+
+static enum rf_status check_open(const struct wiring *ring, struct forward *forward,
+                                 const double theta[], struct rf_error *error)
+{
+    enum rf_status status = forward_analyse(forward, ring);
     if (status == RF_OK)
         status = forward_evaluate(forward, theta);
-    free(theta);
     if (status != RF_OK)
         return fail(error, status, "%s: the recorded ring's readings cannot be computed",
-                    diagnosis->job->source);
-    for (size_t i = 0; i < n && status == RF_OK; i++) {
-        size_t m = observations[i].measurement;
-        if (!observations[i].open || !forward_reachable(forward, m))
-            continue;
-        double expected = highest_expected(forward, m, d);
-        if (expected > diagnosis->models->instrument.over_range)
-            status = refuse(diagnosis, &diagnosis->job->readings[i], expected, error);
+                    ring->job->source);
+    for (size_t i = 0; i < forward_measurements(forward) && status == RF_OK; i++) {
+        double expected = forward_reachable(forward, i)
+                              ? highest_expected(forward, i, (size_t)ring->n_parameters)
+                              : 0.0;
+        if (expected > ring->models->instrument.over_range)
+            status = refuse(ring, forward_measurement(forward, i), expected, error);
     }
+    return status;
+}
+
+enum rf_status check_range(const struct wiring *ring, struct rf_error *error)
+{
+    struct measurement *list = NEW_ARRAY(struct measurement, ring->job->n_readings);
+    double *theta = NEW_ARRAY(double, ring->n_parameters);
+    size_t n = list != NULL ? list_open(ring->job, list) : 0;
+    struct forward *forward = n > 0 ? forward_create(ring, list, n) : NULL;
+    enum rf_status status = RF_OK;
+    if (list == NULL || theta == NULL || (n > 0 && forward == NULL))
+        status = fail_memory(error);
+    else if (n > 0)
+        status = check_open(ring, forward, theta, error);
+    forward_destroy(forward);
+    free(theta);
+    free(list);
     return status;
 }

@@ -29,11 +29,6 @@ void candidates_finish(struct candidates *candidates); /* takes zeroed */
 double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
                            const struct rf_models *models);
 
-/* range.c: RF_REFUSED where a reading is over range that a ring wired as recorded would put there;
- * RF_NUMERICAL, RF_MEMORY. */
-enum rf_status check_range(const struct rf_diagnosis *diagnosis, struct fitter *fitter,
-                           struct rf_error *error);
-
 /* rank.c: fits each, sorts them best first (ties keep enumeration order) and makes the confidences
  * sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
  * other confidence moves by more than some ten thousandths. */

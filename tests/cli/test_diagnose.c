@@ -382,6 +382,59 @@ START_TEST(json_says_what_the_readings_determine)
 }
 END_TEST
 
+/* --- readings nobody would believe --- */
+
+/* A ring of three points whose every reading is `value`, runs of `metres`; invented. */
+static void write_same_everywhere(const char *path, const char *value, double metres)
+{
+    char job[1024];
+    snprintf(job, sizeof job,
+             "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\","
+             " \"live_mm2\": 1.0, \"run_m\": %.1f}, {\"id\": \"P2\", \"run_m\": %.1f}, {\"id\":"
+             " \"P3\", \"run_m\": %.1f}], \"last_run_m\": %.1f},"
+             " \"readings\": {\"end_to_end\": {\"l\": %s, \"n\": %s, \"e\": %s},"
+             " \"cross_ln\": {\"board\": %s, \"P1\": %s, \"P2\": %s, \"P3\": %s}}}\n",
+             metres, metres, metres, metres, value, value, value, value, value, value, value);
+    write_whole(path, job);
+}
+
+START_TEST(every_command_answers_readings_nobody_would_believe)
+{
+    static const char *const values[] = {"\"open\"", "0", "99.9", "[0, \"open\", 99.9]"};
+    static const double metres[] = {0.1, 5, 500};
+    for (size_t i = 0; i < sizeof values / sizeof *values; i++)
+        for (size_t k = 0; k < sizeof metres / sizeof *metres; k++) {
+            write_same_everywhere("odd.json", values[i], metres[k]);
+            struct run left = run(PROGRAM "check odd.json && " PROGRAM "expect odd.json && " PROGRAM
+                                          "diagnose odd.json && " PROGRAM
+                                          "diagnose --json odd.json && " PROGRAM
+                                          "diagnose --page page.html odd.json && " PROGRAM
+                                          "review odd.json");
+            ck_assert_msg(left.status == 0, "%s, %g m: status %d, %s", values[i], metres[k],
+                          left.status, left.err);
+            ck_assert_msg(strstr(left.out, "nan") == NULL && strstr(left.out, ":null") == NULL,
+                          "%s, %g m: no number", values[i], metres[k]);
+            run_finish(&left);
+        }
+}
+END_TEST
+
+/* 16 km of cable read over range with nothing wrong. */
+START_TEST(refuses_over_range_where_the_ring_reads_so)
+{
+    static char job[4096];
+    size_t n = (size_t)sprintf(job, "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [");
+    for (int i = 1; i <= 32; i++)
+        n += (size_t)sprintf(job + n, "%s{\"id\": \"P%d\", \"run_m\": 500}", i > 1 ? ", " : "", i);
+    sprintf(job + n, "]}, \"readings\": {\"end_to_end\": {\"n\": 99.5, \"l\": \"open\"}}}\n");
+    write_whole("far.json", job);
+    static const char says[] =
+        "far.json: readings.end_to_end.l: found \"open\"; needs to be left out";
+    expect_run(PROGRAM "check far.json", 2, NULL, says);
+    expect_run(PROGRAM "diagnose far.json", 2, NULL, says);
+}
+END_TEST
+
 int main(void)
 {
     Suite *suite = suite_create("diagnose");
@@ -399,5 +452,7 @@ int main(void)
     tcase_add_test(cases, writes_json_a_line_a_job);
     tcase_add_test(cases, leaves_the_plan_out_when_asked);
     tcase_add_test(cases, json_says_what_the_readings_determine);
+    tcase_add_test(cases, every_command_answers_readings_nobody_would_believe);
+    tcase_add_test(cases, refuses_over_range_where_the_ring_reads_so);
     return run_suite(suite);
 }
