@@ -39,8 +39,12 @@ RF_API const char *rf_diagnosis_words(const struct rf_diagnosis *diagnosis, size
 /* The family's name as in files. */
 RF_API const char *rf_diagnosis_family(const struct rf_diagnosis *diagnosis, size_t i);
 
-/* The misfit test's p-value, and whether it says that nothing compared explains the readings. */
+/* The misfit test's p-value, and whether it says that no one defect explains the readings. */
 RF_API double rf_diagnosis_misfit(const struct rf_diagnosis *diagnosis, bool *flag);
+
+/* Where it says so and something wider explains them, what the ranking assumes: "faces", bad
+ * contacts at every face; "lengths", worse than recorded; "two_defects", at once. Else NULL. */
+RF_API const char *rf_diagnosis_assumes(const struct rf_diagnosis *diagnosis);
 
 #ifdef __cplusplus
 }

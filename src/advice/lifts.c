@@ -61,9 +61,14 @@ static double mean_or_nan(const struct seeker *s, size_t measurement)
     return forward_reachable(s->forward, measurement) ? forward_mean(s->forward, measurement) : NAN;
 }
 
-static double noise_at(const struct seeker *s, double ohms)
+/* Of the ring without fault. */
+static double noise_at(const struct seeker *s, size_t measurement)
 {
-    return instrument_sigma(&s->diagnosis->models->instrument, ohms > 0.0 ? ohms : 0.0);
+    const struct measurement *m = forward_measurement(s->forward, measurement);
+    double ohms = s->sound[measurement], repeats = 1.0;
+    if (measurement < s->n_read)
+        repeats = s->times[measurement];
+    return reading_sigma(s->diagnosis->models, m->setup, m->spot, repeats, ohms > 0.0 ? ohms : 0.0);
 }
 
 /* Means and gradients without fault, and the factor of what the readings say of the ring. */
@@ -81,7 +86,7 @@ static bool look_at_ring(struct seeker *s)
         const double *row = s->jacobian + i * s->d;
         if (isnan(s->sound[i]))
             continue;
-        double sigma = noise_at(s, s->sound[i]), weight = s->times[i] / (sigma * sigma);
+        double sigma = noise_at(s, i), weight = s->times[i] / (sigma * sigma);
         for (size_t j = 0; j < s->d; j++)
             for (size_t k = j; k < s->d; k++)
                 s->factor[j * s->d + k] += weight * row[j] * row[k];
@@ -143,7 +148,7 @@ static void shift_ring(struct seeker *s)
 {
     memset(s->shift, 0, s->d * sizeof *s->shift);
     for (size_t i = 0; i < s->n_read; i++) {
-        double mean = mean_or_nan(s, i), sigma = noise_at(s, s->sound[i]);
+        double mean = mean_or_nan(s, i), sigma = noise_at(s, i);
         if (isnan(mean) || isnan(s->sound[i]))
             continue;
         double pull = s->times[i] * (mean - s->sound[i]) / (sigma * sigma);
@@ -163,7 +168,7 @@ static bool shows_at(const struct seeker *s, size_t candidate)
     for (size_t j = 0; j < s->d; j++)
         expected += s->jacobian[i * s->d + j] * s->shift[j];
     /* The likeliest hypothesis' uncertainty stands for the ring's. */
-    double sigma = fmax(s->predictive->sigma[candidate], noise_at(s, s->sound[i]));
+    double sigma = fmax(s->predictive->sigma[candidate], noise_at(s, i));
     return fabs(mean - expected) > shows * sigma;
 }
 

@@ -100,7 +100,8 @@ static enum rf_status predict_under(struct predictive *p, size_t h,
         if (!forward_reachable(forward, i))
             continue;
         *mean = forward_mean(forward, i);
-        double noise = instrument_sigma(&diagnosis->models->instrument, fmax(*mean, 0.0));
+        double noise = reading_sigma(diagnosis->models, p->candidates[i].setup,
+                                     p->candidates[i].spot, 1.0, fmax(*mean, 0.0));
         *sigma = sqrt(noise * noise + fit_variance(ranked, forward_gradient(forward, i), scratch));
     }
     return status;

@@ -83,8 +83,10 @@ static bool look_at_ring(struct sight *s, struct forward *forward)
         s->mean[m] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;
         if (isnan(s->mean[m]))
             continue;
-        s->sigma[m] =
-            instrument_sigma(&s->diagnosis->models->instrument, s->mean[m]) / sqrt(s->times[m]);
+        const struct measurement *read = forward_measurement(forward, m);
+        s->sigma[m] = reading_sigma(s->diagnosis->models, read->setup, read->spot, s->times[m],
+                                    s->mean[m]) /
+                      sqrt(s->times[m]);
         for (size_t j = 0; j < s->d; j++)
             row[j] = forward_gradient(forward, m)[j] / s->sigma[m];
         for (size_t j = 0; j < s->d; j++)

@@ -7,6 +7,9 @@
  *
  *   enumerate → rank (fit each, weigh) → misfit → places → findings → blind
  *
+ * and, where the misfit test says that no one defect explains the readings, before places: widen,
+ * pairs; and rank and misfit again under what explains them.
+ *
  * What is over range is NAN wherever ohms are kept here.
  */
 
@@ -71,8 +74,8 @@ struct danger_chance {
 struct rf_diagnosis {
     const struct rf_job *job;
     const struct rf_models *models;
-    struct wiring ring; /* as recorded */
-    bool screened;
+    struct rf_models widened; /* `models`, where the model was widened */
+    struct wiring ring;       /* as recorded */
     size_t n_hypotheses;
     size_t n_ranked;
     struct ranked *ranked; /* best first */
@@ -94,6 +97,19 @@ struct rf_diagnosis {
         double chi_square;  /* of the rest, with the penalty */
         size_t degrees;
     } misfit;
+    /* Where `misfit.flag` is up and something wider explains what one fault under the model does
+     * not: all that is ranked here assumes it, and `misfit` but for p and flag is of its best. */
+    struct {
+        bool assumed;         /* and then one of these three: */
+        double face_ohms;     /* Ω on average, as the readings have it; else 0 */
+        double length_factor; /* so many times as wrong as recorded; else 0 */
+        bool two_defects;     /* pairs were compared, too */
+        double p;             /* of the misfit test, under it */
+        double log_odds;      /* log of its evidence over that of the model as it is, which would
+                               * have … */
+        struct hypothesis otherwise_first; /* … this first, */
+        double otherwise_confidence;       /* … with this confidence */
+    } wider;
     bool found_known; /* the job says what was found */
     struct hypothesis found;
     size_t found_rank;       /* 0: first; n_ranked where it is not among them */

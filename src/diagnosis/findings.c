@@ -47,7 +47,9 @@ static bool read_the_same(const struct rf_diagnosis *diagnosis, const struct ran
         double a = one->fitted[i], b = other->fitted[i];
         if (isnan(a) != isnan(b))
             return false;
-        double sigma = isnan(a) ? 1.0 : instrument_sigma(&diagnosis->models->instrument, a);
+        const struct reading *reading = &diagnosis->job->readings[i];
+        double sigma =
+            isnan(a) ? 1.0 : reading_sigma(diagnosis->models, reading->setup, reading->spot, 1.0, a);
         if (!isnan(a) && fabs(a - b) > same_reading * sigma)
             return false;
     }

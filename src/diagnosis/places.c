@@ -19,8 +19,11 @@ const char *const danger_words[N_DANGERS] = {
 
 struct adding {
     const struct rf_job *job;
+    double *shows, *missed;     /* [place_chance] of one fault; of all of a hypothesis */
+    struct place_chance *first; /* of those that follow, which lie in a row */
     struct place_chance *open, *check, *run, *board; /* [place], [place], [run], one */
     double confidence;
+    bool together; /* the hypothesis is more than one fault */
     double left; /* share of the fault not ruled out by looks; its other looks are shares of that */
 };
 
@@ -34,21 +37,41 @@ static void add_look(void *context, const struct look *look)
                                  : look->kind == LOOK_OPEN    ? &adding->open[look->index]
                                                               : &adding->check[look->index];
     entry->look = *look;
-    entry->chance += adding->confidence * look->share / adding->left;
+    if (adding->together)
+        adding->shows[entry - adding->first] += look->share / adding->left;
+    else
+        entry->chance += adding->confidence * look->share / adding->left;
+}
+
+/* Two faults may show in one place: the chance is that not both stay hidden there. */
+static void add_fault_of_several(struct adding *adding, size_t n, bool last)
+{
+    for (size_t i = 0; i < n; i++) {
+        adding->missed[i] *= 1.0 - fmin(1.0, adding->shows[i]);
+        adding->shows[i] = 0.0;
+        if (last) {
+            adding->first[i].chance += adding->confidence * (1.0 - adding->missed[i]);
+            adding->missed[i] = 1.0;
+        }
+    }
 }
 
 static void add_hypothesis(struct adding *adding, struct rf_diagnosis *diagnosis,
-                           const struct candidate *candidate)
+                           const struct candidate *candidate, size_t n_entries)
 {
     bool counted[N_DANGERS] = {false};
+    size_t n = candidate->hypothesis.n_faults;
     adding->confidence = candidate->confidence;
-    for (size_t i = 0; i < candidate->hypothesis.n_faults; i++) {
+    adding->together = n > 1;
+    for (size_t i = 0; i < n; i++) {
         const struct fault *fault = &candidate->hypothesis.faults[i];
         adding->left = fault->family->each_enough
                            ? 1.0
                            : share_left_by_looks(fault, diagnosis->job, diagnosis->models);
         if (adding->left > 0.0)
             fault_looks(fault, diagnosis->job, diagnosis->models, add_look, adding);
+        if (adding->together)
+            add_fault_of_several(adding, n_entries, i + 1 == n);
         enum danger danger = fault_danger(fault, diagnosis->job);
         diagnosis->dangers[danger].danger = danger;
         if (!counted[danger])
@@ -74,18 +97,27 @@ enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candid
 {
     size_t places = diagnosis->job->n_places, runs = n_runs(diagnosis->job);
     size_t n = 2 * places + runs + 1;
+    double *shows = NEW_ARRAY(double, n), *missed = NEW_ARRAY(double, n);
     diagnosis->places = NEW_ARRAY(struct place_chance, n);
-    if (diagnosis->places == NULL)
-        return fail_memory(error);
     struct adding adding = {
         .job = diagnosis->job,
+        .shows = shows,
+        .missed = missed,
+        .first = diagnosis->places,
         .open = diagnosis->places,
         .check = diagnosis->places + places,
         .run = diagnosis->places + 2 * places,
         .board = diagnosis->places + 2 * places + runs,
     };
-    for (size_t i = 0; i < candidates->n; i++)
-        add_hypothesis(&adding, diagnosis, &candidates->list[i]);
+    bool ok = diagnosis->places != NULL && shows != NULL && missed != NULL;
+    for (size_t i = 0; i < n && ok; i++)
+        missed[i] = 1.0;
+    for (size_t i = 0; i < candidates->n && ok; i++)
+        add_hypothesis(&adding, diagnosis, &candidates->list[i], n);
+    free(shows);
+    free(missed);
+    if (!ok)
+        return fail_memory(error);
     qsort(diagnosis->places, n, sizeof *diagnosis->places, by_chance);
     while (diagnosis->n_places < n &&
            diagnosis->places[diagnosis->n_places].chance >= confidence_shown)

@@ -210,6 +210,12 @@ static bool sort_candidates(struct candidates *candidates)
     return ok;
 }
 
+enum rf_status candidates_sort(struct candidates *candidates, struct rf_error *error)
+{
+    normalise(candidates);
+    return sort_candidates(candidates) ? RF_OK : fail_memory(error);
+}
+
 static enum rf_status fit_all(struct ranking *r, struct rf_error *error)
 {
     enum rf_status status = RF_OK;
@@ -251,6 +257,5 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
     free(ranking.put_off);
     if (status != RF_OK)
         return status;
-    normalise(candidates);
-    return sort_candidates(candidates) ? RF_OK : fail_memory(error);
+    return candidates_sort(candidates, error);
 }

@@ -35,6 +35,17 @@ double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
 enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
                                const struct wiring *ring, bool screen, struct rf_error *error);
 
+/* Of those fitted, the last part of that. RF_MEMORY. */
+enum rf_status candidates_sort(struct candidates *candidates, struct rf_error *error);
+
+/* pairs.c: the ranked singles and pairs of them, ranked. More than a pass over pairs only if these
+ * may come to weigh e to the `log_wanted`. *log_evidence: what they weigh, if two defects were as
+ * likely as one. The caller finishes `all`, whatever the answer. */
+enum rf_status candidates_add_pairs(struct candidates *all, const struct candidates *singles,
+                                    struct fitter *fitter, const struct wiring *ring,
+                                    double log_wanted, double *log_evidence,
+                                    struct rf_error *error);
+
 /* The steps after that. Each fills its part of the diagnosis. `best` is the fit of the first. */
 enum rf_status keep_ranked(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
                            struct fitter *fitter, struct rf_error *error);
@@ -45,5 +56,17 @@ enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candid
 enum rf_status group_findings(struct rf_diagnosis *diagnosis, struct rf_error *error);
 enum rf_status seek_blind_spots(struct rf_diagnosis *diagnosis, const struct candidates *candidates,
                                 struct fitter *fitter, struct rf_error *error);
+
+/* Log of what all that was compared weighs: Σ_h prior(h) · Z(h). */
+double log_evidence_of_all(const struct candidates *candidates);
+
+/* widen.c: the wider model that explains the readings best, by the likeliest of the candidates, and
+ * the log of its evidence by them. */
+enum rf_status choose_widening(const struct rf_diagnosis *diagnosis,
+                               const struct candidates *candidates, struct widening *wider,
+                               double *log_evidence, struct rf_error *error);
+/* Notes in `wider` what it assumes that `diagnosis`, which it takes the place of, does not. */
+void note_widening(const struct rf_diagnosis *diagnosis, struct rf_diagnosis *wider,
+                   double log_odds);
 
 #endif

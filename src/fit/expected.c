@@ -150,8 +150,10 @@ static enum rf_status read_expected(const struct wiring *ring, const struct stat
             continue;
         }
         double mean = forward_mean(forward, i);
-        expected[i] = expect_mean(mean, mean_sigma(state, forward_gradient(forward, i)),
-                                  instrument_sigma(&ring->models->instrument, mean), k);
+        double noise =
+            reading_sigma(ring->models, measurements[i].setup, measurements[i].spot, 1.0, mean);
+        expected[i] =
+            expect_mean(mean, mean_sigma(state, forward_gradient(forward, i)), noise, k);
     }
     forward_destroy(forward);
     return status;

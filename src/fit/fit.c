@@ -50,10 +50,10 @@ static bool list_measurements(struct fitter *f, struct measurement *list, size_t
     const struct rf_job *job = f->ring->job;
     size_t slots = N_SETUPS * (job->n_places + N_SPOTS);
     size_t *index = NEW_ARRAY(size_t, slots); /* 1 + index of the measurement in that slot */
-    if (index == NULL)
-        return false;
+    size_t *repeats = NEW_ARRAY(size_t, f->n_observations); /* [measurement] */
+    bool ok = index != NULL && repeats != NULL;
     *n = 0;
-    for (size_t i = 0; i < job->n_readings; i++) {
+    for (size_t i = 0; ok && i < job->n_readings; i++) {
         const struct reading *r = &job->readings[i];
         size_t slot = r->setup * (job->n_places + N_SPOTS) +
                       (r->spot == SPOT_POINT ? N_SPOTS + r->place : (size_t)r->spot);
@@ -61,10 +61,16 @@ static bool list_measurements(struct fitter *f, struct measurement *list, size_t
             list[*n] = (struct measurement){r->setup, r->spot, r->place};
             index[slot] = ++*n;
         }
-        f->observations[i] = observe(r, index[slot] - 1, &f->ring->models->instrument);
+        f->observations[i].measurement = index[slot] - 1;
+        repeats[index[slot] - 1]++;
+    }
+    for (size_t i = 0; ok && i < job->n_readings; i++) {
+        size_t m = f->observations[i].measurement;
+        f->observations[i] = observe(&job->readings[i], m, repeats[m], f->ring->models);
     }
     free(index);
-    return true;
+    free(repeats);
+    return ok;
 }
 
 struct fitter *fitter_create(const struct wiring *ring)

@@ -333,7 +333,7 @@ static void read_through_instrument(struct forward *f, size_t i, double resistan
     mean += p[map->lead].sigma * theta[map->lead];
     gradient[map->lead] = p[map->lead].sigma;
     if (spot == SPOT_POINT || spot == SPOT_HIGHEST) {
-        mean += p[map->face].sigma * theta[map->face];
+        mean += p[map->face].mean + p[map->face].sigma * theta[map->face];
         gradient[map->face] = p[map->face].sigma;
     }
     if (joining == JOIN_LEAD_OUT || joining == JOIN_LEAD_IN) {

@@ -10,14 +10,25 @@ double instrument_sigma(const struct instrument_model *in, double ohms)
     return sqrt(in->noise_floor * in->noise_floor + relative * relative + in->step * in->step / 12.0);
 }
 
+double reading_sigma(const struct rf_models *models, size_t setup, enum spot spot, double repeats,
+                     double ohms)
+{
+    double sigma = instrument_sigma(&models->instrument, ohms), face = models->wider.face_ohms;
+    if (!(face > 0.0) || (spot != SPOT_POINT && spot != SPOT_HIGHEST))
+        return sigma;
+    double faces = setup_is_pair(&setups[setup]) ? 2.0 : 1.0;
+    return sqrt(sigma * sigma + repeats * faces * face * face);
+}
+
 double instrument_misread_density(const struct instrument_model *in, double ohms)
 {
     return 1.0 / (fmax(ohms, in->misread_floor) * log(in->over_range / in->misread_floor));
 }
 
-struct observation observe(const struct reading *reading, size_t measurement,
-                           const struct instrument_model *in)
+struct observation observe(const struct reading *reading, size_t measurement, size_t repeats,
+                           const struct rf_models *models)
 {
+    const struct instrument_model *in = &models->instrument;
     struct observation o = {.measurement = measurement, .open = reading->open};
     if (reading->open) {
         o.log_no_path = log(1.0 - in->open_wrong);
@@ -25,7 +36,8 @@ struct observation observe(const struct reading *reading, size_t measurement,
     }
     double density = instrument_misread_density(in, reading->ohms);
     o.ohms = reading->ohms;
-    o.sigma = instrument_sigma(in, reading->ohms);
+    o.sigma =
+        reading_sigma(models, reading->setup, reading->spot, (double)repeats, reading->ohms);
     o.log_peak = log((1.0 - in->open_wrong) * (1.0 - in->misread) / (o.sigma * sqrt(2.0 * M_PI)));
     o.misread = (1.0 - in->open_wrong) * in->misread * density;
     o.log_misread = log(o.misread);

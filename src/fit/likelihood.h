@@ -28,11 +28,18 @@ struct observation {
 /* σ(y), Ω: floor, share of the reading, and the display's step. */
 double instrument_sigma(const struct instrument_model *instrument, double ohms);
 
+/* The same of a reading: with what the faces it goes through scatter, where the models are widened
+ * to that. It is one of so many `repeats`, which all go through the same faces: what those scatter
+ * is not to average out over them, so each gets so many times its variance. */
+double reading_sigma(const struct rf_models *models, size_t setup, enum spot spot, double repeats,
+                     double ohms);
+
 /* U(y), 1/Ω: the density of misreads. */
 double instrument_misread_density(const struct instrument_model *instrument, double ohms);
 
-struct observation observe(const struct reading *reading, size_t measurement,
-                           const struct instrument_model *instrument);
+/* `repeats`: how many readings there are of the measurement. */
+struct observation observe(const struct reading *reading, size_t measurement, size_t repeats,
+                           const struct rf_models *models);
 
 /* Log-likelihood of a reading over range where a path exists. */
 double log_open_with_path(const struct instrument_model *instrument);

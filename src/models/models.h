@@ -50,6 +50,15 @@ struct instrument_model {
     double over_range;     /* 99.9 */
 };
 
+/* How much worse than the models say faces and lengths are taken to be. Nothing that is loaded: all
+ * 0, until a diagnosis finds that it would explain what nothing else does. */
+struct widening {
+    double face_ohms; /* Ω: a resistance of its own in each conductor's way to each face, so much
+                           * on average and, exponential, with so much standard deviation */
+    double
+        length_excess; /* recorded runs are 1 + so many times as wrong (of the log) as recorded */
+};
+
 /* faults.json: one row a family. */
 struct family_prior {
     const char *name;
@@ -89,6 +98,7 @@ struct rf_models {
     double unknown_cpc_mm2;          /* 1.5 */
     double unknown_cpc_sigma;        /* 0.7 of the log */
     struct instrument_model instrument;
+    struct widening wider;
     double archive_none; /* share of `none` among filed jobs, whatever rates were asked for */
     size_t n_families;
     struct family_prior families[MODELS_MAX_FAMILIES];

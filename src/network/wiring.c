@@ -73,16 +73,19 @@ static void map_parameters(struct wiring *wiring)
     struct parameter_map *map = &wiring->map;
     map->runs = 0;
     for (size_t run = 0; run < n_runs(job); run++)
-        wiring_add_parameter(wiring, isnan(job->places[run_far_end(run)].run_m)
-                                         ? models->unknown_length.sigma
-                                         : job->length_accuracy);
+        wiring_add_parameter(wiring,
+                             isnan(job->places[run_far_end(run)].run_m)
+                                 ? models->unknown_length.sigma
+                                 : job->length_accuracy * (1.0 + models->wider.length_excess));
     for (int c = 0; c < N_CONDUCTORS; c++)
         map->conductor[c] = wiring_add_parameter(wiring, models->conductor_sigma);
     map->unknown_cpc = cpc_unknown(job) ? wiring_add_parameter(wiring, models->unknown_cpc_sigma)
                                         : NO_PARAMETER;
     map->gain = wiring_add_parameter(wiring, models->instrument.gain_sigma);
     map->lead = wiring_add_parameter(wiring, models->instrument.lead_sigma);
-    map->face = wiring_add_parameter(wiring, models->instrument.face_sigma);
+    map->face = wiring_add_parameter(
+        wiring, hypot(models->instrument.face_sigma, models->wider.face_ohms));
+    wiring->parameters[map->face].mean = 2.0 * models->wider.face_ohms; /* of a pair's two */
     map->wander = wiring_add_parameter(wiring, models->instrument.wander_sigma);
     map->n_common = wiring->n_parameters;
 }

@@ -45,6 +45,7 @@ struct links {
 
 struct parameter {
     double sigma; /* a factor exp(σθ) on resistances, on the gain; or σθ Ω for offsets */
+    double mean;  /* Ω, what offsets have besides; 0 for what is a factor */
 };
 
 /* Where the fixed parameters stand in θ. Fault parameters follow from `n_common` on. */

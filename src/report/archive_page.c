@@ -151,7 +151,7 @@ static void worst_row(struct markup *markup, const struct review_line *line, con
         markup_element(markup, "b", NULL, line->job);
     }
     text_addf(&words, ": %s", line->verdict == VERDICT_UNEXPLAINED
-                                  ? "nothing compared explains its readings; the likeliest: "
+                                  ? "no one defect explains its readings; the likeliest: "
                                   : "");
     text_add(&words, line->words);
     if (line->found.known)

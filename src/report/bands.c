@@ -34,7 +34,8 @@ static void take_bands(const struct rf_diagnosis *diagnosis, const struct forwar
         if (!forward_reachable(forward, i))
             continue;
         double ohms = forward_mean(forward, i);
-        double noise = instrument_sigma(&diagnosis->models->instrument, fmax(ohms, 0));
+        const struct measurement *m = forward_measurement(forward, i);
+        double noise = reading_sigma(diagnosis->models, m->setup, m->spot, 1, fmax(ohms, 0));
         double variance =
             fit_variance(&diagnosis->ranked[0], forward_gradient(forward, i), scratch);
         bands[i] = band_around(ohms, sqrt(noise * noise + variance));

@@ -208,6 +208,23 @@ static void add_misfit(struct writer *writer, cJSON *root)
     json_add(&writer->json, root, "misfit", object);
 }
 
+/* What the ranking assumes beyond the model, where that explains the readings and it does not. */
+static void add_wider(struct writer *writer, cJSON *root)
+{
+    const struct rf_diagnosis *diagnosis = writer->diagnosis;
+    if (!diagnosis->wider.assumed)
+        return;
+    cJSON *object = cJSON_CreateObject();
+    if (diagnosis->wider.face_ohms > 0)
+        add_ohms(writer, object, "face_ohms", diagnosis->wider.face_ohms);
+    else if (diagnosis->wider.length_factor > 0)
+        json_add_number(&writer->json, object, "length_factor", diagnosis->wider.length_factor);
+    else
+        json_add_number(&writer->json, object, "defects", 2);
+    json_add_number(&writer->json, object, "p", diagnosis->wider.p);
+    json_add(&writer->json, root, "wider", object);
+}
+
 /* --- the plan --- */
 
 static cJSON *plan_object(struct writer *writer, const struct plan *plan)
@@ -258,6 +275,7 @@ void report_json(const struct rf_diagnosis *diagnosis, const struct rf_advice *a
     json_add_words(&writer.json, root, "models", rf_models_name(diagnosis->models));
     json_add_number(&writer.json, root, "hypotheses", (double)diagnosis->n_hypotheses);
     add_misfit(&writer, root);
+    add_wider(&writer, root);
     add_faults(&writer, root);
     add_findings(&writer, root);
     add_places(&writer, root);

@@ -79,6 +79,33 @@ bool is_suspect(const struct rf_diagnosis *diagnosis, size_t reading)
 
 /* --- nothing explains the readings --- */
 
+/* What would explain them, and what is to be done about it. */
+static void say_wider(const struct rf_diagnosis *diagnosis, struct said *said)
+{
+    struct text words = {0};
+    if (diagnosis->wider.face_ohms > 0) {
+        text_addf(&words, "Bad contacts at the faces would explain them: some %.2f",
+                  diagnosis->wider.face_ohms);
+        text_add(&words, NO_BREAK "Ω in each conductor's way to each face, here more, there less. "
+                                  "Clean the faces, plug in and out a few times, and read again. "
+                                  "All that follows assumes such contacts; ");
+    } else if (diagnosis->wider.length_factor > 0) {
+        text_addf(&words,
+                  "Run lengths about %.0f times as wrong as recorded would explain them. Check the "
+                  "recorded lengths, and leave out those that nobody measured. All that follows "
+                  "assumes such lengths; ",
+                  diagnosis->wider.length_factor);
+    } else {
+        text_add(&words, "Two at once would explain them, and are compared below, too: the "
+                         "likeliest with every other, and what goes best with that; not all pairs. "
+                         "Faces, meter and recorded lengths may be to blame all the same; ");
+    }
+    text_add(&words, diagnosis->wider.two_defects
+                         ? "read again before you take anything off."
+                         : "two defects, or another wiring than recorded, remain possible.");
+    add_plain(said, &words);
+}
+
 void say_misfit(const struct rf_diagnosis *diagnosis, struct said *said)
 {
     if (!diagnosis->misfit.flag)
@@ -91,11 +118,14 @@ void say_misfit(const struct rf_diagnosis *diagnosis, struct said *said)
         text_add(&words, "fewer than 1 in 100");
     else
         text_addf(&words, "about %.0f in 100", 100 * diagnosis->misfit.p);
-    text_add(&words,
-             " read so far off. Two defects, another wiring than recorded, or readings that "
-             "went wrong may be behind it. Read again before you take anything off; the "
-             "chances below are worth little.");
+    text_add(&words, " read so far off. ");
+    if (!diagnosis->wider.assumed)
+        text_add(&words, "Two defects, another wiring than recorded, or readings that went wrong "
+                         "may be behind it. Read again before you take anything off; the chances "
+                         "below are worth little.");
     add_plain(said, &words);
+    if (diagnosis->wider.assumed)
+        say_wider(diagnosis, said);
 }
 
 /* --- danger --- */

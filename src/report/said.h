@@ -51,7 +51,7 @@ void say_cautions(const struct rf_diagnosis *diagnosis, struct said *said);
 void say_ring(const struct rf_job *job, struct text *out);
 
 /* The headings, which refer to one another. */
-#define HEADING_MISFIT "Nothing compared explains these readings"
+#define HEADING_MISFIT "No one defect explains these readings"
 #define HEADING_DANGER "Danger if re-energised"
 #define HEADING_CHECKS "First, without a screw"
 #define HEADING_WHERE "Where"

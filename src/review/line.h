@@ -24,7 +24,7 @@ enum verdict {
     VERDICT_NO_DEFECT,   /* nothing wrong carries at least four fifths */
     VERDICT_DEFECT,      /* something wrong does */
     VERDICT_UNDECIDED,   /* neither */
-    VERDICT_UNEXPLAINED, /* the misfit test says that nothing compared explains the readings */
+    VERDICT_UNEXPLAINED, /* the misfit test says that no one defect explains the readings */
     N_VERDICTS
 };
 extern const char *const verdict_names[N_VERDICTS];

@@ -7,10 +7,11 @@
  *   heavy tails          noise of Student's t, 4 degrees, of the same variance
  *   faces                an exponential resistance, 0.02 Ω on average, in every way to a face
  *   lengths              runs twice as wrong, of the log, as recorded
- *   second defect        two; right is what is first and is one of them
+ *   second defect        two; right is what is first and is one of them, or both where two are first
  *
- * first: the true fault is first; error: calibration (calibration.h); misfit: the share that the
- * test flags; then the same of the jobs it does not flag.
+ * first: the true fault is first; error: calibration (calibration.h). Of all jobs, as reported and as
+ * it would be if only one defect under the model were compared; of those flagged, too; of those not
+ * flagged; and of those that something wider explains (diagnosis/widen.c, pairs.c).
  */
 
 #include "calibration.h"
@@ -36,18 +37,52 @@ static const struct departure table[] = {
     {"second defect", {0}, 2},
 };
 
+enum group { ALL, ALL_BEFORE, UNFLAGGED, FLAGGED, FLAGGED_BEFORE, FACES, LENGTHS, TWO, N_GROUPS };
+
+static const char *const group_names[N_GROUPS] = {"as reported",  "  otherwise",     "not flagged",
+                                                  "flagged",      "  otherwise",     "  by faces",
+                                                  "  by lengths", "  by two defects"};
+
 struct score {
-    size_t n, right, flagged, unflagged_right;
-    struct bin bins[N_BINS], unflagged[N_BINS];
+    struct group_score {
+        size_t n, right;
+        struct bin bins[N_BINS];
+    } groups[N_GROUPS];
 };
 
-static bool is_right(const struct rf_diagnosis *d)
+static bool is_right(const struct rf_diagnosis *d, const struct hypothesis *first)
 {
-    const struct hypothesis *first = &d->ranked[0].hypothesis;
     for (size_t i = 0; i < d->found.n_faults; i++)
         if (first->n_faults == 1 && fault_equal(&first->faults[0], &d->found.faults[i]))
             return true;
-    return d->found_rank == 0;
+    return hypothesis_equal(first, &d->found);
+}
+
+static void count(struct score *score, enum group group, double confidence, bool right)
+{
+    score->groups[group].n++;
+    score->groups[group].right += right;
+    count_in_bin(score->groups[group].bins, confidence, right);
+}
+
+static void count_job(struct score *score, const struct rf_diagnosis *d)
+{
+    double confidence = d->ranked[0].confidence, before = confidence;
+    bool right = is_right(d, &d->ranked[0].hypothesis), right_before = right;
+    if (d->wider.assumed) {
+        before = d->wider.otherwise_confidence;
+        right_before = is_right(d, &d->wider.otherwise_first);
+        count(score,
+              d->wider.two_defects     ? TWO
+              : d->wider.face_ohms > 0 ? FACES
+                                       : LENGTHS,
+              confidence, right);
+    }
+    count(score, ALL, confidence, right);
+    count(score, ALL_BEFORE, before, right_before);
+    count(score, d->misfit.flag ? FLAGGED : UNFLAGGED, confidence, right);
+    if (d->misfit.flag)
+        count(score, FLAGGED_BEFORE, before, right_before);
 }
 
 static enum rf_status run_job(const struct departure *departure, const struct rf_models *models,
@@ -63,17 +98,8 @@ static enum rf_status run_job(const struct departure *departure, const struct rf
         status = simulate(ring, models, &simulation, &truth, error);
     if (status == RF_OK)
         status = rf_diagnose(truth->job, models, &d, error);
-    if (status == RF_OK) {
-        bool right = is_right(d);
-        score->n++;
-        score->right += right;
-        score->flagged += d->misfit.flag;
-        count_in_bin(score->bins, d->ranked[0].confidence, right);
-        if (!d->misfit.flag) {
-            score->unflagged_right += right;
-            count_in_bin(score->unflagged, d->ranked[0].confidence, right);
-        }
-    }
+    if (status == RF_OK)
+        count_job(score, d);
     rf_diagnosis_destroy(d);
     truth_destroy(truth);
     rf_job_destroy(ring);
@@ -82,14 +108,15 @@ static enum rf_status run_job(const struct departure *departure, const struct rf
 
 static void print_score(const char *name, const struct score *score)
 {
-    double n = (double)score->n, unflagged = (double)(score->n - score->flagged);
-    printf("%-14s %zu jobs: first %.3f, error %.3f, misfit %.3f; not flagged: first %.3f, error "
-           "%.3f\n",
-           name, score->n, (double)score->right / n, calibration_error(score->bins),
-           (double)score->flagged / n, (double)score->unflagged_right / unflagged,
-           calibration_error(score->unflagged));
+    printf("%s\n", name);
+    for (size_t g = 0; g < N_GROUPS; g++) {
+        const struct group_score *group = &score->groups[g];
+        if (group->n > 0)
+            printf("  %-16s %4zu jobs, first %.3f, error %.3f\n", group_names[g], group->n,
+                   (double)group->right / (double)group->n, calibration_error(group->bins));
+    }
     for (size_t i = 0; i < N_BINS; i++) {
-        const struct bin *bin = &score->bins[i];
+        const struct bin *bin = &score->groups[ALL].bins[i];
         if (bin->n > 0)
             printf("    confidence %.2f to %.2f: %4zu jobs, mean %.3f, right %.3f\n", bounds[i],
                    bounds[i + 1], bin->n, bin->confidence / (double)bin->n,

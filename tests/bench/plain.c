@@ -113,7 +113,7 @@ static enum rf_status init(struct plain *p, const struct wiring *ring, struct rf
         p->current == NULL || !init_networks(p))
         return fail_memory(error);
     for (size_t i = 0; i < n; i++)
-        p->observations[i] = observe(&job->readings[i], i, &ring->models->instrument);
+        p->observations[i] = observe(&job->readings[i], i, 1, ring->models);
     return RF_OK;
 }
 

@@ -42,7 +42,7 @@ static bool exists(const char *folder, const char *name)
 
 static cJSON *read_expected(const char *name)
 {
-    static const char *const known[] = {"source", "found", "least_confidence", "misfit",
+    static const char *const known[] = {"source", "found", "least_confidence", "misfit", "wider",
                                         "value",  "look",  "suspects"};
     char path[PATH_MOST], bytes[8192];
     struct rf_error error;
@@ -110,6 +110,16 @@ static void check_found(const struct rf_diagnosis *d, const cJSON *expected, con
                       d->findings[finding].confidence, least->valuedouble);
 }
 
+/* What else explains the readings where no one defect does; nothing where nothing is said. */
+static void check_wider(const struct rf_diagnosis *d, const cJSON *expected, const char *name)
+{
+    const char *wider = cJSON_GetStringValue(cJSON_GetObjectItem(expected, "wider"));
+    const char *assumed = rf_diagnosis_assumes(d);
+    assumed = assumed != NULL ? assumed : "nothing";
+    wider = wider != NULL ? wider : "nothing";
+    ck_assert_msg(strcmp(assumed, wider) == 0, "%s: assumes %s; expected %s", name, assumed, wider);
+}
+
 static void check_value(const struct rf_diagnosis *d, const cJSON *expected, const char *name)
 {
     const cJSON *value = cJSON_GetObjectItem(expected, "value");
@@ -174,6 +184,7 @@ static void check_scenario(const char *name)
     check_found(diagnosis, expected, name);
     ck_assert_msg(diagnosis->misfit.flag == cJSON_IsTrue(cJSON_GetObjectItem(expected, "misfit")),
                   "%s: misfit p = %g", name, diagnosis->misfit.p);
+    check_wider(diagnosis, expected, name);
     check_value(diagnosis, expected, name);
     check_look(diagnosis, expected, name);
     check_suspects(diagnosis, expected, name);

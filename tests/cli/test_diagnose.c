@@ -168,16 +168,27 @@ START_TEST(says_that_nothing_shows)
 }
 END_TEST
 
-START_TEST(says_first_that_nothing_explains_it)
+/* And what would: two defects, or bad faces, which the rest then assumes. */
+START_TEST(says_first_that_no_one_defect_explains_it)
 {
-    static const char *const words[] = {
-        "chapel-two-defects",
-        "NOTHING COMPARED EXPLAINS THESE READINGS",
-        "Two defects",
+    static const char *const of_two[] = {
+        "chapel-two-defects", "NO ONE DEFECT EXPLAINS THESE READINGS", "Two at once would",
+        "read again",         "WHAT IT MAY BE",                        ", and ",
+    };
+    static const char *const of_faces[] = {
+        "dairy-worn-faces",
+        "NO ONE DEFECT EXPLAINS THESE READINGS",
+        "Bad contacts at the faces would",
+        "0.02 Ω in each",
+        "Clean the faces",
+        "read again",
         "WHAT IT MAY BE",
     };
     struct run left = run(PROGRAM "diagnose " SCENARIOS "chapel-two-defects.json");
-    expect_in_order(left.out, words, sizeof words / sizeof words[0]);
+    expect_in_order(left.out, of_two, sizeof of_two / sizeof of_two[0]);
+    run_finish(&left);
+    left = run(PROGRAM "diagnose " SCENARIOS "dairy-worn-faces.json");
+    expect_in_order(left.out, of_faces, sizeof of_faces / sizeof of_faces[0]);
     run_finish(&left);
 }
 END_TEST
@@ -308,6 +319,15 @@ static void expect_diagnosis(const char *line)
     double p = number(member(root, "misfit"), "p");
     ck_assert(p >= 0 && p <= 1);
     ck_assert(cJSON_IsBool(member(member(root, "misfit"), "flag")));
+    if (cJSON_HasObjectItem(root, "wider")) {
+        const cJSON *wider = member(root, "wider");
+        ck_assert(cJSON_IsTrue(member(member(root, "misfit"), "flag")));
+        ck_assert(number(wider, "p") >= 0.05);
+        ck_assert_int_eq(cJSON_HasObjectItem(wider, "face_ohms") +
+                             cJSON_HasObjectItem(wider, "length_factor") +
+                             cJSON_HasObjectItem(wider, "defects"),
+                         1);
+    }
     expect_faults(root);
     expect_findings(root);
     expect_places(root);
@@ -447,7 +467,7 @@ int main(void)
     tcase_add_test(cases, long_names_fit_the_screen);
     tcase_add_test(cases, says_where_the_joint_is);
     tcase_add_test(cases, says_that_nothing_shows);
-    tcase_add_test(cases, says_first_that_nothing_explains_it);
+    tcase_add_test(cases, says_first_that_no_one_defect_explains_it);
     tcase_add_test(cases, checks_before_screws);
     tcase_add_test(cases, writes_json_a_line_a_job);
     tcase_add_test(cases, leaves_the_plan_out_when_asked);

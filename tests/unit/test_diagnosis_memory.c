@@ -16,7 +16,14 @@
 #include <stdio.h>
 #include <string.h>
 
-/* Invented: a bad joint, spur and all, something of every section; and a job nothing explains. */
+#define THREE_POINTS                                                                               \
+    "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\", \"run_m\": 6}, "  \
+    "{\"id\": \"P2\", \"run_m\": 5}, {\"id\": \"P3\", \"run_m\": 7}], \"last_run_m\": 7}, "        \
+    "\"readings\": {\"end_to_end\": {\"l\": 0.19, \"n\": 0.19, \"e\": 0.30}, \"cross_ln\": "       \
+    "{\"board\": 0.09, "
+
+/* Invented: a bad joint, spur and all, something of every section; a job nothing explains; one that
+ * bad faces explain; one that two defects do. */
 static const char *const jobs[] = {
     "{\"format\": \"ringfettle-job/1\", \"job\": \"j\", \"ring\": {\"points\": [{\"id\": \"P1\", "
     "\"label\": \"landing\", \"run_m\": 6}, {\"id\": \"P2\", \"run_m\": 5}, {\"id\": \"P3\"}], "
@@ -28,6 +35,18 @@ static const char *const jobs[] = {
     "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\", \"run_m\": 6}, "
     "{\"id\": \"P2\", \"run_m\": 5}], \"last_run_m\": 7}, \"readings\": {\"end_to_end\": "
     "{\"l\": 9.0, \"n\": \"open\", \"e\": 0}, \"cross_ln\": {\"P1\": 3.0, \"P2\": 0}}}",
+    THREE_POINTS
+    "\"P1\": 0.11, \"P2\": [0.24, 0.23], \"P3\": [0.19, 0.18]}, \"cross_le\": {\"board\": "
+    "0.12, \"P1\": [0.23, 0.24], \"P2\": 0.19, \"P3\": 0.29}}}",
+    THREE_POINTS
+    "\"P1\": 0.09, \"P2\": 0.72, \"P3\": [0.43, 0.44]}, \"cross_le\": {\"board\": 0.12, "
+    "\"P1\": 0.13, \"P2\": 0.76, \"P3\": 0.13}}}",
+};
+
+static const char *const assumes[] = {NULL, NULL, "faces", "two_defects"};
+enum {
+    N_JOBS = sizeof jobs / sizeof *jobs,
+    IN_ALL_STEPS = 2 /* the others differ in the first only */
 };
 
 enum step { STEP_DIAGNOSE, STEP_ADVISE, STEP_TEXT, STEP_JSON, STEP_PAGE, N_STEPS };
@@ -83,8 +102,10 @@ static enum rf_status go(const char *text, enum step step, const struct rf_diagn
 
 START_TEST(each_fails)
 {
-    const char *text = jobs[_i / N_STEPS];
-    enum step step = (enum step)(_i % N_STEPS);
+    int whole = IN_ALL_STEPS * N_STEPS;
+    int index = _i < whole ? _i / N_STEPS : IN_ALL_STEPS + _i - whole;
+    const char *text = jobs[index];
+    enum step step = _i < whole ? (enum step)(_i % N_STEPS) : STEP_DIAGNOSE;
     struct rf_job *job = NULL;
     struct rf_diagnosis *diagnosis = NULL;
     struct rf_advice *advice = NULL;
@@ -92,6 +113,10 @@ START_TEST(each_fails)
     size_t needed, made;
     lead_cjson_here(true);
     ck_assert_int_eq(read_and_diagnose(text, &job, &diagnosis, &error), RF_OK);
+    if (assumes[index] == NULL)
+        ck_assert_ptr_null(rf_diagnosis_assumes(diagnosis));
+    else
+        ck_assert_str_eq(rf_diagnosis_assumes(diagnosis), assumes[index]);
     ck_assert_int_eq(rf_advise(diagnosis, &advice, &error), RF_OK);
     ck_assert_int_eq(go(text, step, diagnosis, advice, 0, &needed), RF_OK);
     ck_assert_uint_gt(needed, 3);
@@ -100,7 +125,7 @@ START_TEST(each_fails)
         ck_assert_msg(status == RF_MEMORY, "%s: allocation %zu of %zu: status %d",
                       step_names[step], i, needed, (int)status);
     }
-    printf("job %d, %s: %zu allocations\n", _i / N_STEPS, step_names[step], needed);
+    printf("job %d, %s: %zu allocations\n", index, step_names[step], needed);
     rf_advice_destroy(advice);
     rf_diagnosis_destroy(diagnosis);
     rf_job_destroy(job);
@@ -114,7 +139,7 @@ int main(void)
     TCase *tests = tcase_create("memory");
     tcase_set_timeout(tests, 60);
     tcase_add_checked_fixture(tests, load_models, unload_models);
-    tcase_add_loop_test(tests, each_fails, 0, 2 * N_STEPS);
+    tcase_add_loop_test(tests, each_fails, 0, IN_ALL_STEPS * N_STEPS + N_JOBS - IN_ALL_STEPS);
     suite_add_tcase(suite, tests);
     return run_suite(suite);
 }
