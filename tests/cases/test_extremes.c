@@ -99,7 +99,7 @@ static void check_reports(const struct rf_diagnosis *d, const struct rf_advice *
     ck_assert_msg(parsed != NULL, "%s", what);
     check_json_value(parsed, what);
     if (d->misfit.flag)
-        ck_assert_msg(strstr(text.bytes, "NOTHING COMPARED EXPLAINS THESE READINGS") != NULL, "%s",
+        ck_assert_msg(strstr(text.bytes, "NO ONE DEFECT EXPLAINS THESE READINGS") != NULL, "%s",
                       what);
     cJSON_Delete(parsed);
     text_finish(&text);
