@@ -172,8 +172,12 @@ END_TEST
 START_TEST(says_first_that_no_one_defect_explains_it)
 {
     static const char *const of_two[] = {
-        "chapel-two-defects", "NO ONE DEFECT EXPLAINS THESE READINGS", "Two at once would",
-        "read again",         "WHAT IT MAY BE",                        ", and ",
+        "chapel-two-defects",
+        "NO ONE DEFECT EXPLAINS THESE READINGS",
+        "Two at once would",
+        "before you take anything off",
+        "WHAT IT MAY BE",
+        ", and ",
     };
     static const char *const of_faces[] = {
         "dairy-worn-faces",
