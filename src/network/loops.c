@@ -9,38 +9,66 @@
 
 /*
  * Supernodes are the nodes after links are contracted, found by union and find. Columns are the
- * edges of those components that some probe reads; C and the paths p are dense rows over them,
- * floats because their entries are −1, 0 and 1 and the rows are read whole.
+ * edges of those components that some probe reads. The way from a supernode to the root of its tree
+ * is kept as tails: columns in a row that it passes in one direction, then the way of the supernode
+ * where they end. In a ring, whose edges are numbered along it, that is one tail or two, whatever the
+ * number of points. C is dense, but told apart by sections: columns in a row, alike in every loop.
  */
+struct tail {
+    size_t from, to; /* columns; none at a root */
+    int sign;        /* +1: passed from a to b */
+    int next;        /* supernode */
+};
+
+/* A loop that passes a section, +1: from a to b. */
+struct member {
+    size_t loop;
+    double sign;
+};
+
+/* A row over the columns that changes by `by` at `column`. */
+struct change {
+    size_t column;
+    int by;
+};
+
 struct loops {
     size_t max_nodes, max_edges, max_probes, max_loops;
 
     /* scratch of the analysis */
     int *leader;         /* [node] union-find, then its supernode */
-    int *parent, *depth; /* [supernode] tree; parent −1 at a root */
+    int *parent;         /* [supernode] tree; −1 at a root */
     int *parent_edge;    /* [supernode] the edge towards the parent */
     signed char *parent_sign; /* +1: that edge runs from the supernode to its parent */
     int *component;      /* [supernode] its root */
     int *first, *next;   /* adjacency: [supernode] and [2·edge] lists of half edges */
-    int *queue;
+    int *queue;          /* supernodes, each after its parent */
+    size_t n_queue;
+    struct tail *tail;   /* [supernode] */
     unsigned char *in_tree; /* [edge] */
     unsigned char *wanted;  /* [supernode] a root: some probe reads its component */
+    unsigned char *starts;  /* [column] a section may start there */
+    struct change *changes;
+    size_t n_changes;
 
     /* the analysis */
-    size_t n_columns, n_loops, n_probes;
+    size_t n_columns, n_loops, n_probes, n_sections;
     int *edge_of_column;
     int *column_of_edge;
-    float *loop_rows;    /* n_loops × n_columns: C */
-    float *probe_rows;   /* n_probes × n_columns: p */
-    unsigned char *path; /* [probe] */
+    signed char *loop_rows; /* n_loops × n_columns: C */
+    size_t *section_from;   /* [section], and n_columns behind the last */
+    size_t *member_first;   /* [section], and the end behind the last */
+    struct member *members; /* the loops each section lies in */
+    size_t *stretch_first;  /* [probe], and the end behind the last */
+    struct stretch *stretches;
+    unsigned char *path;    /* [probe] */
 
     /* the numbers */
     double *r;         /* [column] */
-    double *weighted;  /* n_loops × n_columns: C D */
+    double *up_to;     /* [column] Σ r of the columns before it; and of all behind the last */
     double *factor;    /* n_loops × n_loops: Cholesky factor of C D Cᵀ */
     double *loop_flow; /* [loop] */
-    double *flow;      /* [column] */
-    double *power;     /* [column] */
+    double *ohms, *current; /* [stretch of one probe] */
 };
 
 void loops_destroy(struct loops *loops)
@@ -49,26 +77,32 @@ void loops_destroy(struct loops *loops)
         return;
     free(loops->leader);
     free(loops->parent);
-    free(loops->depth);
     free(loops->parent_edge);
     free(loops->parent_sign);
     free(loops->component);
     free(loops->first);
     free(loops->next);
     free(loops->queue);
+    free(loops->tail);
     free(loops->in_tree);
     free(loops->wanted);
+    free(loops->starts);
+    free(loops->changes);
     free(loops->edge_of_column);
     free(loops->column_of_edge);
     free(loops->loop_rows);
-    free(loops->probe_rows);
+    free(loops->section_from);
+    free(loops->member_first);
+    free(loops->members);
+    free(loops->stretch_first);
+    free(loops->stretches);
     free(loops->path);
     free(loops->r);
-    free(loops->weighted);
+    free(loops->up_to);
     free(loops->factor);
     free(loops->loop_flow);
-    free(loops->flow);
-    free(loops->power);
+    free(loops->ohms);
+    free(loops->current);
     free(loops);
 }
 
@@ -83,32 +117,40 @@ struct loops *loops_create(size_t nodes, size_t edges, size_t probes, size_t n_l
     l->max_loops = n_loops;
     l->leader = NEW_ARRAY(int, nodes);
     l->parent = NEW_ARRAY(int, nodes);
-    l->depth = NEW_ARRAY(int, nodes);
     l->parent_edge = NEW_ARRAY(int, nodes);
     l->parent_sign = NEW_ARRAY(signed char, nodes);
     l->component = NEW_ARRAY(int, nodes);
     l->first = NEW_ARRAY(int, nodes);
     l->next = NEW_ARRAY(int, 2 * edges);
     l->queue = NEW_ARRAY(int, nodes);
+    l->tail = NEW_ARRAY(struct tail, nodes);
     l->in_tree = NEW_ARRAY(unsigned char, edges);
     l->wanted = NEW_ARRAY(unsigned char, nodes);
+    l->starts = NEW_ARRAY(unsigned char, edges + 1);
+    l->changes = NEW_ARRAY(struct change, 4 * edges);
     l->edge_of_column = NEW_ARRAY(int, edges);
     l->column_of_edge = NEW_ARRAY(int, edges);
-    l->loop_rows = NEW_ARRAY(float, n_loops * edges);
-    l->probe_rows = NEW_ARRAY(float, probes * edges);
+    l->loop_rows = NEW_ARRAY(signed char, n_loops * edges);
+    l->section_from = NEW_ARRAY(size_t, edges + 1);
+    l->member_first = NEW_ARRAY(size_t, edges + 1);
+    l->members = NEW_ARRAY(struct member, n_loops * edges);
+    l->stretch_first = NEW_ARRAY(size_t, probes + 1);
+    l->stretches = NEW_ARRAY(struct stretch, probes * edges);
     l->path = NEW_ARRAY(unsigned char, probes);
     l->r = NEW_ARRAY(double, edges);
-    l->weighted = NEW_ARRAY(double, n_loops * edges);
+    l->up_to = NEW_ARRAY(double, edges + 1);
     l->factor = NEW_ARRAY(double, n_loops * n_loops);
     l->loop_flow = NEW_ARRAY(double, n_loops);
-    l->flow = NEW_ARRAY(double, edges);
-    l->power = NEW_ARRAY(double, edges);
-    if (l->leader == NULL || l->parent == NULL || l->depth == NULL || l->parent_edge == NULL ||
+    l->ohms = NEW_ARRAY(double, edges);
+    l->current = NEW_ARRAY(double, edges);
+    if (l->leader == NULL || l->parent == NULL || l->parent_edge == NULL ||
         l->parent_sign == NULL || l->component == NULL || l->first == NULL || l->next == NULL ||
-        l->queue == NULL || l->in_tree == NULL || l->wanted == NULL ||
-        l->edge_of_column == NULL || l->column_of_edge == NULL || l->loop_rows == NULL ||
-        l->probe_rows == NULL || l->path == NULL || l->r == NULL || l->weighted == NULL ||
-        l->factor == NULL || l->loop_flow == NULL || l->flow == NULL || l->power == NULL) {
+        l->queue == NULL || l->tail == NULL || l->in_tree == NULL || l->wanted == NULL ||
+        l->starts == NULL || l->changes == NULL || l->edge_of_column == NULL ||
+        l->column_of_edge == NULL || l->loop_rows == NULL || l->section_from == NULL ||
+        l->member_first == NULL || l->members == NULL || l->stretch_first == NULL ||
+        l->stretches == NULL || l->path == NULL || l->r == NULL || l->up_to == NULL ||
+        l->factor == NULL || l->loop_flow == NULL || l->ohms == NULL || l->current == NULL) {
         loops_destroy(l);
         return NULL;
     }
@@ -156,15 +198,14 @@ static void list_neighbours(struct loops *l, size_t nodes, const struct edge edg
     }
 }
 
-/* Breadth first, so that paths stay short.  */
+/* Breadth first, so that paths stay short. Appends to the queue. */
 static void grow_tree(struct loops *l, int root, const struct edge edges[])
 {
-    size_t head = 0, tail = 0;
+    size_t head = l->n_queue;
     l->parent[root] = -1;
-    l->depth[root] = 0;
     l->component[root] = root;
-    l->queue[tail++] = root;
-    while (head < tail) {
+    l->queue[l->n_queue++] = root;
+    while (head < l->n_queue) {
         int v = l->queue[head++];
         for (int half = l->first[v]; half >= 0; half = l->next[half]) {
             int e = half / 2;
@@ -174,11 +215,10 @@ static void grow_tree(struct loops *l, int root, const struct edge edges[])
                 continue;
             l->component[w] = root;
             l->parent[w] = v;
-            l->depth[w] = l->depth[v] + 1;
             l->parent_edge[w] = e;
             l->parent_sign[w] = from_a ? -1 : 1;
             l->in_tree[e] = 1;
-            l->queue[tail++] = w;
+            l->queue[l->n_queue++] = w;
         }
     }
 }
@@ -186,6 +226,7 @@ static void grow_tree(struct loops *l, int root, const struct edge edges[])
 static void grow_forest(struct loops *l, size_t nodes, const struct edge edges[], size_t n_edges)
 {
     memset(l->in_tree, 0, n_edges);
+    l->n_queue = 0;
     for (size_t v = 0; v < nodes; v++)
         l->component[v] = -1;
     for (size_t v = 0; v < nodes; v++)
@@ -220,17 +261,35 @@ static void choose_columns(struct loops *l, const struct edge edges[], size_t n_
     }
 }
 
-/* Adds the signed tree path from supernode a to b to a row over the columns. */
-static void add_tree_path(const struct loops *l, int a, int b, float *row)
+/* The way of each supernode to its root, from its parent's: one column more. */
+static void write_tails(struct loops *l)
 {
-    while (a != b) {
-        if (l->depth[a] >= l->depth[b]) {
-            row[l->column_of_edge[l->parent_edge[a]]] += (float)l->parent_sign[a];
-            a = l->parent[a];
-        } else {
-            row[l->column_of_edge[l->parent_edge[b]]] -= (float)l->parent_sign[b];
-            b = l->parent[b];
-        }
+    for (size_t i = 0; i < l->n_queue; i++) {
+        int v = l->queue[i], parent = l->parent[v];
+        struct tail *tail = &l->tail[v];
+        *tail = (struct tail){.next = -1};
+        if (parent < 0 || !l->wanted[l->component[v]])
+            continue;
+        size_t column = (size_t)l->column_of_edge[l->parent_edge[v]];
+        const struct tail *before = &l->tail[parent];
+        *tail = (struct tail){column, column + 1, l->parent_sign[v], parent};
+        if (before->from == before->to || before->sign != tail->sign)
+            continue;
+        if (before->to == column)
+            *tail = (struct tail){before->from, column + 1, tail->sign, before->next};
+        else if (before->from == column + 1)
+            *tail = (struct tail){column, before->to, tail->sign, before->next};
+    }
+}
+
+/* Adds the way from a supernode to its root, or back, to a row of C. */
+static void add_way(struct loops *l, int supernode, int direction, signed char *row)
+{
+    for (int v = supernode; v >= 0; v = l->tail[v].next) {
+        const struct tail *tail = &l->tail[v];
+        for (size_t c = tail->from; c < tail->to; c++)
+            row[c] = (signed char)(row[c] + direction * tail->sign);
+        l->starts[tail->from] = l->starts[tail->to] = 1;
     }
 }
 
@@ -238,25 +297,114 @@ static void add_tree_path(const struct loops *l, int a, int b, float *row)
 static void write_loops(struct loops *l, const struct edge edges[])
 {
     size_t n = l->n_columns, k = 0;
-    memset(l->loop_rows, 0, l->n_loops * n * sizeof *l->loop_rows);
+    memset(l->loop_rows, 0, l->n_loops * n);
+    memset(l->starts, 0, n + 1);
     for (size_t c = 0; c < n; c++) {
         int e = l->edge_of_column[c];
         if (l->in_tree[e])
             continue;
-        float *row = l->loop_rows + k++ * n;
-        row[c] = 1.0F;
-        add_tree_path(l, l->leader[edges[e].b], l->leader[edges[e].a], row);
+        signed char *row = l->loop_rows + k++ * n;
+        row[c] = 1;
+        l->starts[c] = l->starts[c + 1] = 1;
+        add_way(l, l->leader[edges[e].b], 1, row);
+        add_way(l, l->leader[edges[e].a], -1, row);
     }
 }
 
-static void write_paths(struct loops *l, const struct probe probes[])
+/* Whether C is the same in the column as in the one before it. */
+static bool same_column(const struct loops *l, size_t column)
 {
-    size_t n = l->n_columns;
-    memset(l->probe_rows, 0, l->n_probes * n * sizeof *l->probe_rows);
-    for (size_t i = 0; i < l->n_probes; i++)
-        if (l->path[i])
-            add_tree_path(l, l->leader[probes[i].a], l->leader[probes[i].b],
-                          l->probe_rows + i * n);
+    for (size_t i = 0; i < l->n_loops; i++) {
+        const signed char *c = l->loop_rows + i * l->n_columns + column;
+        if (c[0] != c[-1])
+            return false;
+    }
+    return true;
+}
+
+static void write_sections(struct loops *l)
+{
+    size_t n = l->n_columns, k = l->n_loops, members = 0;
+    l->n_sections = 0;
+    for (size_t c = 0; c < n; c++) {
+        if (c > 0 && (!l->starts[c] || same_column(l, c)))
+            continue;
+        size_t s = l->n_sections++;
+        l->section_from[s] = c;
+        l->member_first[s] = members;
+        for (size_t i = 0; i < k; i++)
+            if (l->loop_rows[i * n + c] != 0)
+                l->members[members++] = (struct member){i, l->loop_rows[i * n + c]};
+    }
+    l->section_from[l->n_sections] = n;
+    l->member_first[l->n_sections] = members;
+}
+
+static bool looped(const struct loops *l, size_t section)
+{
+    return l->member_first[section] < l->member_first[section + 1];
+}
+
+/* Puts a change in its place; changes in one column become one. */
+static void add_change(struct loops *l, size_t column, int by)
+{
+    size_t i = l->n_changes;
+    while (i > 0 && l->changes[i - 1].column > column)
+        i--;
+    if (i > 0 && l->changes[i - 1].column == column) {
+        l->changes[i - 1].by += by;
+        return;
+    }
+    memmove(l->changes + i + 1, l->changes + i, (l->n_changes - i) * sizeof *l->changes);
+    l->changes[i] = (struct change){column, by};
+    l->n_changes++;
+}
+
+static void add_way_changes(struct loops *l, int supernode, int direction)
+{
+    for (int v = supernode; v >= 0; v = l->tail[v].next) {
+        const struct tail *tail = &l->tail[v];
+        if (tail->from == tail->to)
+            continue;
+        add_change(l, tail->from, direction * tail->sign);
+        add_change(l, tail->to, -direction * tail->sign);
+    }
+}
+
+/* Cuts the columns wherever the probe's path or a loop changes, and keeps what may carry current. */
+static size_t cut_stretches(const struct loops *l, struct stretch *stretches)
+{
+    size_t n = 0, change = 0, section = 0;
+    int path = 0;
+    for (size_t c = 0, to = 0; c < l->n_columns; c = to) {
+        while (change < l->n_changes &&
+               (l->changes[change].column <= c || l->changes[change].by == 0))
+            path += l->changes[change++].by;
+        while (l->section_from[section + 1] <= c)
+            section++;
+        to = l->section_from[section + 1];
+        if (change < l->n_changes && l->changes[change].column < to)
+            to = l->changes[change].column;
+        if (path != 0 || looped(l, section))
+            stretches[n++] = (struct stretch){c, to, path, section};
+    }
+    return n;
+}
+
+static void write_stretches(struct loops *l, const struct probe probes[])
+{
+    size_t n = 0;
+    for (size_t i = 0; i < l->n_probes; i++) {
+        int a = l->leader[probes[i].a], b = l->leader[probes[i].b];
+        l->stretch_first[i] = n;
+        if (!l->path[i] || a == b)
+            continue;
+        l->n_changes = 0;
+        add_way_changes(l, a, 1);
+        add_way_changes(l, b, -1);
+        n += cut_stretches(l, l->stretches + n);
+    }
+    l->stretch_first[l->n_probes] = n;
 }
 
 enum rf_status loops_analyse(struct loops *l, size_t nodes, const struct edge edges[],
@@ -271,8 +419,10 @@ enum rf_status loops_analyse(struct loops *l, size_t nodes, const struct edge ed
     choose_columns(l, edges, n_edges);
     if (l->n_loops > l->max_loops)
         return RF_NUMERICAL;
+    write_tails(l);
     write_loops(l, edges);
-    write_paths(l, probes);
+    write_sections(l);
+    write_stretches(l, probes);
     return RF_OK;
 }
 
@@ -288,91 +438,105 @@ size_t loops_columns(const struct loops *l, const int **edge_of_column)
     return l->n_columns;
 }
 
-/* Σ a_c b_c. Four sums, so that additions need not wait for one another. */
-static double dot(const double *restrict a, const float *restrict b, size_t n)
+/* A column alone is not the difference of two sums: it may be much smaller than they are. */
+static inline double sum_of(const struct loops *l, size_t from, size_t to)
 {
-    double s0 = 0.0, s1 = 0.0, s2 = 0.0, s3 = 0.0;
-    size_t c = 0;
-    for (; c + 4 <= n; c += 4) {
-        s0 += a[c] * b[c];
-        s1 += a[c + 1] * b[c + 1];
-        s2 += a[c + 2] * b[c + 2];
-        s3 += a[c + 3] * b[c + 3];
-    }
-    for (; c < n; c++)
-        s0 += a[c] * b[c];
-    return (s0 + s1) + (s2 + s3);
+    return to == from + 1 ? l->r[from] : l->up_to[to] - l->up_to[from];
+}
+
+double loops_sum(const struct loops *l, size_t from, size_t to)
+{
+    return sum_of(l, from, to);
 }
 
 enum rf_status loops_factor(struct loops *l, const double r[])
 {
     size_t n = l->n_columns, k = l->n_loops;
+    double sum = 0.0;
     /* Outside every loop a bad one would not show in the matrix. */
     for (size_t c = 0; c < n; c++) {
         if (!(r[c] > 0.0) || !isfinite(r[c]))
             return RF_NUMERICAL;
         l->r[c] = r[c];
+        l->up_to[c] = sum;
+        sum += r[c];
     }
-    for (size_t i = 0; i < k; i++) {
-        const float *row = l->loop_rows + i * n;
-        double *weighted = l->weighted + i * n;
-        for (size_t c = 0; c < n; c++)
-            weighted[c] = row[c] * r[c];
-        for (size_t j = 0; j <= i; j++)
-            l->factor[j * k + i] = dot(weighted, l->loop_rows + j * n, n);
+    l->up_to[n] = sum;
+    memset(l->factor, 0, k * k * sizeof *l->factor);
+    for (size_t s = 0; s < l->n_sections; s++) {
+        const struct member *end = l->members + l->member_first[s + 1];
+        if (!looped(l, s))
+            continue;
+        double ohms = sum_of(l, l->section_from[s], l->section_from[s + 1]);
+        for (const struct member *i = l->members + l->member_first[s]; i < end; i++)
+            for (const struct member *j = i; j < end; j++)
+                l->factor[i->loop * k + j->loop] += i->sign * j->sign * ohms;
     }
     return cholesky_factor(l->factor, k, k) ? RF_OK : RF_NUMERICAL;
 }
 
+size_t loops_stretches(const struct loops *l, size_t probe, const struct stretch **stretches)
+{
+    *stretches = l->stretches + l->stretch_first[probe];
+    return l->stretch_first[probe + 1] - l->stretch_first[probe];
+}
+
 /* Loop currents for 1 A along the probe's tree path: (C D Cᵀ)⁻¹ C D p. */
-static void solve_loops(struct loops *l, const float *path)
+static void solve_loops(struct loops *l, const struct stretch *stretches, size_t n)
 {
-    size_t n = l->n_columns, k = l->n_loops;
+    size_t k = l->n_loops;
     for (size_t i = 0; i < k; i++)
-        l->loop_flow[i] = dot(l->weighted + i * n, path, n);
-    cholesky_solve(l->factor, k, k, l->loop_flow);
+        l->loop_flow[i] = 0.0;
+    for (size_t s = 0; s < n; s++) {
+        const size_t *first = l->member_first + stretches[s].section;
+        double volts = stretches[s].path * l->ohms[s];
+        if (stretches[s].path == 0)
+            continue;
+        for (size_t i = first[0]; i < first[1]; i++)
+            l->loop_flow[l->members[i].loop] += l->members[i].sign * volts;
+    }
+    if (k == 1)
+        l->loop_flow[0] *= l->factor[0] * l->factor[0];
+    else if (k > 1)
+        cholesky_solve(l->factor, k, k, l->loop_flow);
 }
 
-/* i = p − Cᵀ · loop currents, row by row: each pass is over neighbours in memory. */
-static void add_flows(const struct loops *l, const float *restrict path, double *restrict flow)
+double loops_read_stretches(struct loops *l, size_t probe, double current[])
 {
-    size_t n = l->n_columns;
-    for (size_t c = 0; c < n; c++)
-        flow[c] = path[c];
-    for (size_t k = 0; k < l->n_loops; k++) {
-        const float *restrict row = l->loop_rows + k * n;
-        double loop_flow = l->loop_flow[k];
-        for (size_t c = 0; c < n; c++)
-            flow[c] -= row[c] * loop_flow;
+    const struct stretch *stretches = NULL;
+    size_t n = loops_stretches(l, probe, &stretches);
+    double reading = 0.0;
+    for (size_t s = 0; s < n; s++)
+        l->ohms[s] = sum_of(l, stretches[s].from, stretches[s].to);
+    solve_loops(l, stretches, n);
+    for (size_t s = 0; s < n; s++) {
+        const size_t *first = l->member_first + stretches[s].section;
+        double flow = stretches[s].path;
+        for (size_t i = first[0]; i < first[1]; i++)
+            flow -= l->members[i].sign * l->loop_flow[l->members[i].loop];
+        current[s] = flow;
+        reading += l->ohms[s] * flow * flow;
     }
-}
-
-/* r_c i_c² in every column, and their sum. */
-static double dissipate(const double *restrict r, const double *restrict flow,
-                        double *restrict power, size_t n)
-{
-    double s0 = 0.0, s1 = 0.0;
-    size_t c = 0;
-    for (; c + 2 <= n; c += 2) {
-        power[c] = r[c] * flow[c] * flow[c];
-        power[c + 1] = r[c + 1] * flow[c + 1] * flow[c + 1];
-        s0 += power[c];
-        s1 += power[c + 1];
-    }
-    if (c < n) {
-        power[c] = r[c] * flow[c] * flow[c];
-        s0 += power[c];
-    }
-    return s0 + s1;
+    return reading;
 }
 
 double loops_read(struct loops *l, size_t probe, double power[], double current[])
 {
-    const float *path = l->probe_rows + probe * l->n_columns;
-    if (!l->path[probe])
-        return 0.0;
-    solve_loops(l, path);
-    double *flow = current != NULL ? current : l->flow;
-    add_flows(l, path, flow);
-    return dissipate(l->r, flow, power != NULL ? power : l->power, l->n_columns);
+    const struct stretch *stretches = NULL;
+    size_t n = loops_stretches(l, probe, &stretches);
+    double reading = loops_read_stretches(l, probe, l->current);
+    if (power != NULL)
+        memset(power, 0, l->n_columns * sizeof *power);
+    if (current != NULL)
+        memset(current, 0, l->n_columns * sizeof *current);
+    for (size_t s = 0; s < n; s++) {
+        double flow = l->current[s];
+        for (size_t c = stretches[s].from; c < stretches[s].to; c++) {
+            if (power != NULL)
+                power[c] = l->r[c] * flow * flow;
+            if (current != NULL)
+                current[c] = flow;
+        }
+    }
+    return reading;
 }

@@ -15,7 +15,8 @@
  * Edges of zero resistance are contracted before the tree is grown: a link then joins two nodes
  * into one, a loop of links only vanishes, and C D Cᵀ is positive definite for any positive
  * resistances of the rest. Topology is analysed once; solving for new resistances allocates
- * nothing.
+ * nothing. Edges that follow one another, with nothing that branches off between, carry one current:
+ * in a ring whose edges are numbered along it, a reading costs no more with more points.
  */
 
 #include <ringfettle/status.h>
@@ -56,10 +57,25 @@ size_t loops_columns(const struct loops *loops, const int **edge_of_column);
  */
 enum rf_status loops_factor(struct loops *loops, const double r[]);
 
+/* Columns in a row that carry the same current for 1 A through a probe. What carries none
+ * for certain is left out. */
+struct stretch {
+    size_t from, to; /* columns from … to − 1 */
+    int path;        /* p in them */
+    size_t section;  /* the analysis's own: where C stays the same */
+};
+size_t loops_stretches(const struct loops *loops, size_t probe, const struct stretch **stretches);
+
+/* The reading of one probe for the resistances factored last, Ω; 0 for a probe without a path.
+ * `current` gets that of each of its stretches, A, signed from a to b. */
+double loops_read_stretches(struct loops *loops, size_t probe, double current[]);
+
+/* Σ r over columns from … to − 1, of the resistances factored last. */
+double loops_sum(const struct loops *loops, size_t from, size_t to);
+
 /*
- * The reading of one probe for the resistances factored last, Ω; 0 for a probe without a path.
- * `power[column]` (may be NULL) gets r_e i_e², W at 1 A, whose sum is the reading:
- * ∂R/∂(log r_e) = power_e. `current[column]` (may be NULL) gets i_e, signed from a to b.
+ * The same reading, column by column. `power[column]` (may be NULL) gets r_e i_e², W at 1 A, whose
+ * sum is the reading: ∂R/∂(log r_e) = power_e. `current[column]` (may be NULL) gets i_e.
  */
 double loops_read(struct loops *loops, size_t probe, double power[], double current[]);
 
