@@ -5,6 +5,7 @@
 #include "base/cholesky.h"
 #include "base/error.h"
 #include "base/memory.h"
+#include "fit/equations.h"
 
 #include <math.h>
 #include <string.h>
@@ -32,7 +33,7 @@ struct seeker {
     double *theta;    /* the ring's, of the best fit; faults at their median */
     double *sound;    /* [measurement] Ω without fault; NAN: over range */
     double *jacobian; /* (n_read + n) × d, Ω per whitened unit, without fault */
-    double *factor;   /* d × d, of I + JᵀJ over the readings */
+    struct equations equations; /* H = I + JᵀJ over the readings, factored */
     double *shift;    /* [parameter] Δθ */
     double *shown;    /* [candidate] members that would show there */
 };
@@ -45,15 +46,9 @@ static void finish_seeker(struct seeker *s)
     free(s->theta);
     free(s->sound);
     free(s->jacobian);
-    free(s->factor);
+    equations_free(&s->equations);
     free(s->shift);
     free(s->shown);
-}
-
-static enum rf_status evaluate(struct seeker *s)
-{
-    enum rf_status status = forward_analyse(s->forward, &s->wiring);
-    return status == RF_OK ? forward_evaluate(s->forward, s->theta) : status;
 }
 
 static double mean_or_nan(const struct seeker *s, size_t measurement)
@@ -74,24 +69,20 @@ static double noise_at(const struct seeker *s, size_t measurement)
 /* Means and gradients without fault, and the factor of what the readings say of the ring. */
 static bool look_at_ring(struct seeker *s)
 {
-    if (evaluate(s) != RF_OK)
+    if (forward_analyse(s->forward, &s->wiring) != RF_OK ||
+        forward_evaluate(s->forward, s->theta) != RF_OK)
         return false;
+    equations_begin(&s->equations, s->d);
     for (size_t i = 0; i < s->n_read + s->n; i++) {
         s->sound[i] = mean_or_nan(s, i);
         memcpy(s->jacobian + i * s->d, forward_gradient(s->forward, i), s->d * sizeof(double));
-    }
-    for (size_t j = 0; j < s->d; j++)
-        s->factor[j * s->d + j] = 1.0;
-    for (size_t i = 0; i < s->n_read; i++) {
-        const double *row = s->jacobian + i * s->d;
-        if (isnan(s->sound[i]))
+        if (i >= s->n_read || isnan(s->sound[i]))
             continue;
         double sigma = noise_at(s, i), weight = s->times[i] / (sigma * sigma);
-        for (size_t j = 0; j < s->d; j++)
-            for (size_t k = j; k < s->d; k++)
-                s->factor[j * s->d + k] += weight * row[j] * row[k];
+        equations_add(&s->equations, forward_slopes(s->forward, i), weight, 0.0);
     }
-    return cholesky_factor(s->factor, s->d, s->d);
+    equations_finish(&s->equations, s->forward, s->theta);
+    return cholesky_factor(s->equations.hessian, s->d, s->equations.stride);
 }
 
 /* Lists what has been read, each once: repeats stand behind the reading they repeat. */
@@ -129,11 +120,11 @@ static enum rf_status init_seeker(struct seeker *s, struct rf_error *error)
     s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
     s->sound = NEW_ARRAY(double, s->n_read + s->n);
     s->jacobian = NEW_ARRAY(double, (s->n_read + s->n) * s->d);
-    s->factor = NEW_ARRAY(double, s->d * s->d);
     s->shift = NEW_ARRAY(double, s->d);
     s->shown = NEW_ARRAY(double, s->n);
-    if (s->theta == NULL || s->sound == NULL || s->jacobian == NULL || s->factor == NULL ||
-        s->shift == NULL || s->shown == NULL || s->forward == NULL)
+    if (s->theta == NULL || s->sound == NULL || s->jacobian == NULL || s->shift == NULL ||
+        s->shown == NULL || s->forward == NULL ||
+        !equations_create(&s->equations, s->forward, &d->ring))
         return fail_memory(error);
     memcpy(s->theta, d->ranked[0].theta, s->d * sizeof *s->theta);
     enum rf_status status = wiring_init(&s->wiring, d->job, d->models, error);
@@ -155,7 +146,7 @@ static void shift_ring(struct seeker *s)
         for (size_t j = 0; j < s->d && pull != 0.0; j++)
             s->shift[j] += pull * s->jacobian[i * s->d + j];
     }
-    cholesky_solve(s->factor, s->d, s->d, s->shift);
+    cholesky_solve(s->equations.hessian, s->d, s->equations.stride, s->shift);
 }
 
 /* Whether the member would show at a candidate. */
@@ -178,7 +169,9 @@ static enum rf_status try_member(struct seeker *s, const struct fault *fault,
     struct hypothesis hypothesis = {.faults = {*fault}, .n_faults = 1};
     wiring_copy(&s->wiring, &s->diagnosis->ring);
     hypothesis_apply(&hypothesis, &s->wiring, NULL);
-    enum rf_status status = evaluate(s);
+    enum rf_status status = forward_analyse(s->forward, &s->wiring);
+    if (status == RF_OK)
+        status = forward_evaluate_means(s->forward, s->theta);
     if (status != RF_OK)
         return fail(error, status, "%s: readings to come cannot be computed",
                     s->diagnosis->job->source);

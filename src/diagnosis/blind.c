@@ -3,6 +3,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "diagnosis/steps.h"
+#include "fit/equations.h"
 
 #include <math.h>
 #include <string.h>
@@ -26,7 +27,7 @@ struct sight {
     double *mean;      /* [measured] Ω, of the ring without fault; NAN: over range */
     double *sigma;     /* [measured] Ω, of its readings together */
     double *jacobian;  /* n × d, in σ */
-    double *factor;    /* d × d, of I + JᵀJ */
+    struct equations equations; /* H = I + JᵀJ, factored */
     double *delta, *u; /* [measured], [parameter] */
     double *theta;     /* [parameter, with faults'] */
     struct wiring wiring;
@@ -38,7 +39,7 @@ static void finish_sight(struct sight *s)
     free(s->mean);
     free(s->sigma);
     free(s->jacobian);
-    free(s->factor);
+    equations_free(&s->equations);
     free(s->delta);
     free(s->u);
     free(s->theta);
@@ -56,12 +57,13 @@ static enum rf_status init_sight(struct sight *s, const struct rf_diagnosis *dia
     s->mean = NEW_ARRAY(double, s->n);
     s->sigma = NEW_ARRAY(double, s->n);
     s->jacobian = NEW_ARRAY(double, s->n * s->d);
-    s->factor = NEW_ARRAY(double, s->d * s->d);
     s->delta = NEW_ARRAY(double, s->n);
     s->u = NEW_ARRAY(double, s->d);
     s->theta = NEW_ARRAY(double, s->d + FAULTS_AT_ONCE);
     if (s->times == NULL || s->mean == NULL || s->sigma == NULL || s->jacobian == NULL ||
-        s->factor == NULL || s->delta == NULL || s->u == NULL || s->theta == NULL)
+        s->delta == NULL || s->u == NULL || s->theta == NULL)
+        return fail_memory(error);
+    if (!equations_create(&s->equations, fitter_forward(fitter), &diagnosis->ring))
         return fail_memory(error);
     for (size_t i = 0; i < n_readings; i++)
         s->times[s->observations[i].measurement] += 1.0;
@@ -75,9 +77,7 @@ static bool look_at_ring(struct sight *s, struct forward *forward)
     if (forward_analyse(forward, &s->wiring) != RF_OK ||
         forward_evaluate(forward, s->theta) != RF_OK)
         return false;
-    memset(s->factor, 0, s->d * s->d * sizeof *s->factor);
-    for (size_t j = 0; j < s->d; j++)
-        s->factor[j * s->d + j] = 1.0;
+    equations_begin(&s->equations, s->d);
     for (size_t m = 0; m < s->n; m++) {
         double *row = s->jacobian + m * s->d;
         s->mean[m] = forward_reachable(forward, m) ? forward_mean(forward, m) : NAN;
@@ -87,13 +87,14 @@ static bool look_at_ring(struct sight *s, struct forward *forward)
         s->sigma[m] = reading_sigma(s->diagnosis->models, read->setup, read->spot, s->times[m],
                                     s->mean[m]) /
                       sqrt(s->times[m]);
+        const double *gradient = forward_gradient(forward, m);
         for (size_t j = 0; j < s->d; j++)
-            row[j] = forward_gradient(forward, m)[j] / s->sigma[m];
-        for (size_t j = 0; j < s->d; j++)
-            for (size_t k = j; k < s->d; k++)
-                s->factor[j * s->d + k] += row[j] * row[k];
+            row[j] = gradient[j] / s->sigma[m];
+        equations_add(&s->equations, forward_slopes(forward, m), 1.0 / (s->sigma[m] * s->sigma[m]),
+                      0.0);
     }
-    return cholesky_factor(s->factor, s->d, s->d);
+    equations_finish(&s->equations, forward, s->theta);
+    return cholesky_factor(s->equations.hessian, s->d, s->equations.stride);
 }
 
 /* What is left of δ when the ring's own parameters have explained what they can. */
@@ -106,7 +107,7 @@ static double unexplained(struct sight *s)
         for (size_t j = 0; j < s->d && s->delta[i] != 0.0; j++)
             s->u[j] += s->jacobian[i * s->d + j] * s->delta[i];
     }
-    cholesky_half_solve(s->factor, s->d, s->d, s->u);
+    cholesky_half_solve(s->equations.hessian, s->d, s->equations.stride, s->u);
     for (size_t j = 0; j < s->d; j++)
         explained += s->u[j] * s->u[j];
     return square - explained;
@@ -119,7 +120,7 @@ static enum rf_status would_show(struct sight *s, struct forward *forward,
     wiring_copy(&s->wiring, &s->diagnosis->ring);
     hypothesis_apply(hypothesis, &s->wiring, NULL);
     if (forward_analyse(forward, &s->wiring) != RF_OK ||
-        forward_evaluate(forward, s->theta) != RF_OK)
+        forward_evaluate_means(forward, s->theta) != RF_OK)
         return RF_NUMERICAL;
     *seen = false;
     for (size_t m = 0; m < s->n; m++) {

@@ -118,10 +118,10 @@ static enum rf_status rank_and_test(struct attempt *attempt, bool screen, struct
 {
     struct rf_diagnosis *diagnosis = attempt->diagnosis;
     struct candidates *candidates = &attempt->candidates;
-    candidates_finish(candidates);
+    enum rf_status status = RF_OK;
     forget_ranked(diagnosis);
-    enum rf_status status =
-        candidates_enumerate(candidates, diagnosis->job, diagnosis->models, error);
+    if (candidates->n == 0)
+        status = candidates_enumerate(candidates, diagnosis->job, diagnosis->models, error);
     if (status == RF_OK)
         status = candidates_rank(candidates, attempt->fitter, &diagnosis->ring, screen, error);
     return status == RF_OK ? keep_and_test(attempt, error) : status;

@@ -40,10 +40,14 @@ static bool collect(void *context, const struct fault *fault)
         collector->failed = true;
         return false;
     }
-    struct candidate *candidate = &candidates->list[candidates->n++];
     /* What changes nothing is the empty set. */
     size_t n_faults = fault->family->apply != NULL;
-    *candidate = (struct candidate){.hypothesis = {.faults = {*fault}, .n_faults = n_faults}};
+    candidates->list[candidates->n] = (struct candidate){
+        .hypothesis = {.faults = {*fault}, .n_faults = n_faults},
+        .index = candidates->n,
+        .log_evidence = -INFINITY,
+    };
+    candidates->n++;
     return true;
 }
 

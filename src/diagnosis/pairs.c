@@ -31,8 +31,7 @@ static bool is_kept(const struct candidate kept[], size_t n, const struct hypoth
     return false;
 }
 
-/* No fault, from whose fit the others start, and every single fault beside the one kept last. Those
- * kept before have been beside it already. */
+/* Every single fault beside the one kept last. Those kept before have been beside it already. */
 static bool pair_up(struct candidates *pairs, const struct candidates *singles,
                     const struct candidate kept[], size_t n_kept)
 {
@@ -41,9 +40,6 @@ static bool pair_up(struct candidates *pairs, const struct candidates *singles,
                                  .capacity = singles->n};
     if (pairs->list == NULL)
         return false;
-    for (size_t i = 0; i < singles->n; i++)
-        if (singles->list[i].hypothesis.n_faults == 0)
-            pairs->list[pairs->n++] = singles->list[i];
     for (size_t i = 0; i < singles->n; i++) {
         struct candidate pair = singles->list[i];
         if (pair.hypothesis.n_faults == 0 || is_kept(kept, n_kept, &pair.hypothesis))
@@ -51,17 +47,22 @@ static bool pair_up(struct candidates *pairs, const struct candidates *singles,
         pair.hypothesis.faults[pair.hypothesis.n_faults++] = with->hypothesis.faults[0];
         pair.log_prior += with->log_prior + log(second_share);
         pair.log_looks += with->log_looks;
+        pair.log_evidence = -INFINITY;
+        pair.fitted = false;
+        pair.index = pairs->n;
         pairs->list[pairs->n++] = pair;
     }
     return true;
 }
 
-/* Adds the pairs, without what is none; there is room. */
+/* Adds the pairs; there is room. */
 static void take_over(struct candidates *all, const struct candidates *pairs)
 {
-    for (size_t i = 0; i < pairs->n; i++)
-        if (pairs->list[i].hypothesis.n_faults > 1)
-            all->list[all->n++] = pairs->list[i];
+    for (size_t i = 0; i < pairs->n; i++) {
+        all->list[all->n] = pairs->list[i];
+        all->list[all->n].index = all->n;
+        all->n++;
+    }
 }
 
 static const struct candidate *best_of(const struct candidate list[], size_t from, size_t n)

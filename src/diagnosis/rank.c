@@ -29,10 +29,11 @@ static int by_weight(const void *a, const void *b)
 }
 
 /*
- * Screening. After the first stage a hypothesis is dropped if its evidence is as good as certain to
- * stay `out_of_reach` below the best so far; fitted with the mixture at once if it may be better than
- * that; and put off if neither, until the batch has shown how good the best is. What is dropped weighs
- * nothing: all n of them together would have had less than n · exp(−out_of_reach) of the confidence.
+ * Screening. A hypothesis is dropped if its evidence is as good as certain to stay `out_of_reach` below
+ * the best so far: by its paths alone, or after the first stage. Otherwise it is fitted with the mixture
+ * at once if it is likely to be better than that, or hardly anything can be; or it is put off until the
+ * batch has shown how good the best is. What is dropped weighs nothing: all n of them together would have had less than
+ * n · exp(−out_of_reach) of the confidence.
  */
 enum { BATCH = 1024 };
 
@@ -47,7 +48,8 @@ struct ranking {
     const struct wiring *ring;
     struct wiring wiring; /* of the hypothesis at hand */
     bool screen;
-    double best;          /* the largest log weight so far */
+    double best;          /* the largest log weight so far … */
+    bool explained;       /* … of a hypothesis that explains the readings */
     double *theta;        /* BATCH × stride: where the first stage ended, of those put off */
     double *common;       /* stride: where it ended without a fault, from where the others start */
     size_t stride;
@@ -87,43 +89,59 @@ static double hopeless_below(const struct ranking *r, const struct candidate *ca
     return r->best - out_of_reach(r->candidates->n) - log_share(candidate);
 }
 
+/* Whether the readings are as likely as with normal noise of the size assumed: ½ of log-likelihood each
+ * below the most, and some to spare. Hardly anything is much better then. */
+static bool explains(const struct fitter *fitter, const struct fit *fit)
+{
+    const struct observation *observations = NULL;
+    double n = (double)fitter_observations(fitter, &observations);
+    return fitter_ceiling(fitter) - fit->log_likelihood < 0.5 * n + 3.0;
+}
+
 /* The second stage, from where the fitter is. */
 static enum rf_status fit_mixture(struct ranking *r, struct candidate *candidate, struct fit *fit)
 {
     enum rf_status status = fitter_fit_mixture(r->fitter, hopeless_below(r, candidate), fit);
-    if (status == RF_OK && !fit->abandoned) {
-        candidate->log_evidence = fit->log_evidence;
-        r->best = fmax(r->best, log_weight(candidate));
+    if (status != RF_OK || fit->abandoned)
+        return status;
+    candidate->fitted = true;
+    candidate->log_evidence = fit->log_evidence;
+    if (log_weight(candidate) > r->best) {
+        r->best = log_weight(candidate);
+        r->explained = explains(r->fitter, fit);
     }
-    return status;
+    return RF_OK;
 }
 
-static void put_off(struct ranking *r, const struct fit *fit, size_t index, double most)
+static void put_off(struct ranking *r, const struct fit *fit, size_t index,
+                    const struct prospect *prospect)
 {
     size_t k = r->n_put_off++;
     memcpy(r->theta + k * r->stride, fit->theta, fit->n_parameters * sizeof *fit->theta);
-    r->most[k] = most;
-    r->order[k] = (struct ordered){log_share(&r->candidates->list[index]) + most, k};
+    r->most[k] = prospect->most;
+    r->order[k] = (struct ordered){log_share(&r->candidates->list[index]) + prospect->likely, k};
     r->put_off[k] = index;
 }
 
 static enum rf_status fit_or_put_off(struct ranking *r, size_t index)
 {
     struct candidate *candidate = &r->candidates->list[index];
-    struct fit fit = {0};
-    double most = 0.0;
-    if (analyse(r, candidate) != RF_OK || fitter_fit_normal(r->fitter, r->common, &fit) != RF_OK)
-        return RF_NUMERICAL;
-    if (candidate->hypothesis.n_faults == 0)
-        memcpy(r->common, fit.theta, fit.n_parameters * sizeof *fit.theta);
     double hopeless = hopeless_below(r, candidate);
+    struct fit fit = {0};
+    struct prospect prospect;
+    if (analyse(r, candidate) != RF_OK)
+        return RF_NUMERICAL;
+    if (fitter_ceiling(r->fitter) < hopeless)
+        return RF_OK;
+    if (fitter_fit_normal(r->fitter, r->common, &fit) != RF_OK)
+        return RF_NUMERICAL;
     if (hopeless > -INFINITY) {
-        if (fitter_prospect(r->fitter, &most) != RF_OK)
+        if (fitter_prospect(r->fitter, &prospect) != RF_OK)
             return RF_NUMERICAL;
-        if (most < hopeless)
+        if (prospect.most < hopeless)
             return RF_OK;
-        if (most + log_share(candidate) < r->best) {
-            put_off(r, &fit, index, most);
+        if (!r->explained && prospect.likely + log_share(candidate) < r->best) {
+            put_off(r, &fit, index, &prospect);
             return RF_OK;
         }
     }
@@ -147,8 +165,7 @@ static enum rf_status fit_batch(struct ranking *r, size_t first, size_t n, struc
     r->n_put_off = 0;
     for (size_t i = first; i < first + n; i++) {
         struct candidate *candidate = &r->candidates->list[i];
-        candidate->log_evidence = -INFINITY;
-        if (r->screen && log_share(candidate) == -INFINITY)
+        if (candidate->fitted || (r->screen && log_share(candidate) == -INFINITY))
             continue;
         if (fit_or_put_off(r, i) != RF_OK)
             return report_failure(r, candidate, error);
@@ -195,15 +212,14 @@ static bool sort_candidates(struct candidates *candidates)
     struct candidate *sorted = NEW_ARRAY(struct candidate, candidates->n);
     bool ok = order != NULL && sorted != NULL;
     if (ok) {
-        for (size_t i = 0; i < candidates->n; i++)
-            order[i] = (struct ordered){log_weight(&candidates->list[i]), i};
+        for (size_t i = 0; i < candidates->n; i++) {
+            const struct candidate *candidate = &candidates->list[i];
+            order[i] = (struct ordered){log_weight(candidate), candidate->index};
+            sorted[candidate->index] = *candidate;
+        }
         sort_order(order, candidates->n);
         for (size_t i = 0; i < candidates->n; i++)
-            sorted[i] = candidates->list[order[i].index];
-        free(candidates->list);
-        candidates->list = sorted;
-        candidates->capacity = candidates->n;
-        sorted = NULL;
+            candidates->list[i] = sorted[order[i].index];
     }
     free(order);
     free(sorted);
@@ -216,9 +232,23 @@ enum rf_status candidates_sort(struct candidates *candidates, struct rf_error *e
     return sort_candidates(candidates) ? RF_OK : fail_memory(error);
 }
 
+/* Where the first stage ends without a fault: most faults hardly move the other parameters, so that is
+ * where their fits start. */
+static enum rf_status fit_common(struct ranking *r, struct rf_error *error)
+{
+    struct fit fit = {0};
+    wiring_copy(&r->wiring, r->ring);
+    if (fitter_analyse(r->fitter, &r->wiring) != RF_OK ||
+        fitter_fit_normal(r->fitter, NULL, &fit) != RF_OK)
+        return fail(error, RF_NUMERICAL, "%s: the fit failed for the ring as recorded",
+                    r->ring->job->source);
+    memcpy(r->common, fit.theta, fit.n_parameters * sizeof *fit.theta);
+    return RF_OK;
+}
+
 static enum rf_status fit_all(struct ranking *r, struct rf_error *error)
 {
-    enum rf_status status = RF_OK;
+    enum rf_status status = fit_common(r, error);
     for (size_t first = 0; first < r->candidates->n && status == RF_OK; first += BATCH) {
         size_t left = r->candidates->n - first, n = left < BATCH ? left : BATCH;
         status = fit_batch(r, first, n, error);

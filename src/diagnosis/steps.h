@@ -11,8 +11,10 @@ struct candidate {
     struct hypothesis hypothesis;
     double log_prior;
     double log_looks; /* log of the share that opened and checked places have left of it */
-    double log_evidence;
-    double confidence; /* after ranking */
+    size_t index;        /* in the order of enumeration */
+    bool fitted;
+    double log_evidence; /* -INFINITY until fitted */
+    double confidence;   /* after ranking */
 };
 
 struct candidates {
@@ -29,7 +31,7 @@ void candidates_finish(struct candidates *candidates); /* takes zeroed */
 double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
                            const struct rf_models *models);
 
-/* rank.c: fits each, sorts them best first (ties keep enumeration order) and makes the confidences
+/* rank.c: fits each that is not fitted yet, sorts them best first (ties keep enumeration order) and makes the confidences
  * sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
  * other confidence moves by more than some ten thousandths. */
 enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,

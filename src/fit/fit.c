@@ -3,6 +3,7 @@
 
 #include "base/cholesky.h"
 #include "base/memory.h"
+#include "fit/equations.h"
 
 #include <math.h>
 #include <string.h>
@@ -14,12 +15,10 @@ struct fitter {
     size_t n_observations;
     struct observation *observations;
     double log_open_with_path;
-    size_t stride; /* ≥ parameters of any hypothesis; a multiple of four */
+    struct equations equations; /* at theta; H becomes its factor */
 
     double *theta, *trial, *step;
     double step_promise;   /* of `step`, if it is one from theta; else negative */
-    double *gradient;      /* [parameter] of F */
-    double *hessian;       /* stride × stride, then its factor */
     double *weights, *z;   /* [observation] */
     double *pull, *grip;   /* [measurement] Σ w z / σ and Σ curvature / σ² over its readings */
 };
@@ -35,8 +34,7 @@ void fitter_destroy(struct fitter *f)
     free(f->theta);
     free(f->trial);
     free(f->step);
-    free(f->gradient);
-    free(f->hessian);
+    equations_free(&f->equations);
     free(f->weights);
     free(f->z);
     free(f->pull);
@@ -78,9 +76,8 @@ struct fitter *fitter_create(const struct wiring *ring)
     struct fitter *f = NEW(struct fitter);
     if (f == NULL)
         return NULL;
-    size_t n = 0, d = ((size_t)ring->map.n_common + FAULTS_AT_ONCE + 3) & ~(size_t)3;
+    size_t n = 0, d = (size_t)ring->map.n_common + FAULTS_AT_ONCE;
     f->ring = ring;
-    f->stride = d;
     f->n_observations = ring->job->n_readings;
     f->log_open_with_path = log_open_with_path(&ring->models->instrument);
     struct measurement *list = NEW_ARRAY(struct measurement, f->n_observations);
@@ -88,20 +85,17 @@ struct fitter *fitter_create(const struct wiring *ring)
     f->theta = NEW_ARRAY(double, d);
     f->trial = NEW_ARRAY(double, d);
     f->step = NEW_ARRAY(double, d);
-    f->gradient = NEW_ARRAY(double, d);
-    f->hessian = NEW_ARRAY(double, d * d);
     f->weights = NEW_ARRAY(double, f->n_observations);
     f->z = NEW_ARRAY(double, f->n_observations);
     f->pull = NEW_ARRAY(double, f->n_observations);
     f->grip = NEW_ARRAY(double, f->n_observations);
     bool ok = list != NULL && f->observations != NULL && f->theta != NULL && f->trial != NULL &&
-              f->step != NULL && f->gradient != NULL && f->hessian != NULL && f->weights != NULL &&
-              f->z != NULL && f->pull != NULL && f->grip != NULL &&
-              list_measurements(f, list, &n);
+              f->step != NULL && f->weights != NULL && f->z != NULL && f->pull != NULL &&
+              f->grip != NULL && list_measurements(f, list, &n);
     if (ok)
         f->forward = forward_create(ring, list, n);
     free(list);
-    if (f->forward != NULL)
+    if (f->forward != NULL && equations_create(&f->equations, f->forward, ring))
         return f;
     fitter_destroy(f);
     return NULL;
@@ -127,7 +121,7 @@ size_t fitter_observations(const struct fitter *f, const struct observation **ob
  * finite reading with a path weighs 1, and constants are left out. */
 static double misfit_of_readings(struct fitter *f, enum noise noise)
 {
-    double sum = 0.0;
+    double sum = 0.0, product = 1.0;
     for (size_t i = 0; i < f->n_observations; i++) {
         const struct observation *o = &f->observations[i];
         f->weights[i] = 1.0;
@@ -136,17 +130,19 @@ static double misfit_of_readings(struct fitter *f, enum noise noise)
             sum -= o->log_no_path;
         } else if (o->open) {
             sum -= f->log_open_with_path;
+        } else if (noise == NOISE_NORMAL) {
+            f->z[i] = (o->ohms - forward_mean(f->forward, o->measurement)) / o->sigma;
+            sum += 0.5 * f->z[i] * f->z[i];
         } else {
             double mean = forward_mean(f->forward, o->measurement);
-            if (noise == NOISE_NORMAL) {
-                f->z[i] = (o->ohms - mean) / o->sigma;
-                sum += 0.5 * f->z[i] * f->z[i];
-            } else {
-                sum -= log_mixture(o, mean, &f->weights[i], &f->z[i]);
-            }
+            sum -= log_mixture_term(o, mean, &f->weights[i], &f->z[i], &product);
+        }
+        if (i % MIXTURE_PRODUCTS == MIXTURE_PRODUCTS - 1) {
+            sum -= log(product);
+            product = 1.0;
         }
     }
-    return sum;
+    return sum - log(product);
 }
 
 static double half_square(const double *theta, size_t d)
@@ -196,61 +192,16 @@ static void gather(struct fitter *f, enum curvature curvature)
     }
 }
 
-/* Adds Σ_i grip_i row_i row_iᵀ over four rows to the upper triangle of A (d×d): four rows at a
- * time, because the triangle is then loaded and stored a quarter as often, and in blocks of four
- * columns, because their number is then known to the compiler. Blocks begin left of the diagonal and
- * end right of d, within the stride (a multiple of four); what they leave there is not read. */
-static void add_four(double *restrict A, size_t stride, size_t d, const double grip[4],
-                     const double *const rows[4])
-{
-    const double *restrict r0 = rows[0], *restrict r1 = rows[1];
-    const double *restrict r2 = rows[2], *restrict r3 = rows[3];
-    for (size_t j = 0; j < d; j++) {
-        double s0 = grip[0] * r0[j], s1 = grip[1] * r1[j];
-        double s2 = grip[2] * r2[j], s3 = grip[3] * r3[j];
-        for (size_t block = j & ~(size_t)3; block < d; block += 4) {
-            double *restrict target = A + j * stride + block;
-            for (size_t k = 0; k < 4; k++)
-                target[k] += (s0 * r0[block + k] + s1 * r1[block + k]) +
-                             (s2 * r2[block + k] + s3 * r3[block + k]);
-        }
-    }
-}
-
-/* H = I + JᵀWJ (upper triangle) and the gradient of F at θ, from what was evaluated there. */
+/* H = I + JᵀWJ and the gradient of F at θ, from what was evaluated there. */
 static void normal_equations(struct fitter *f, enum curvature curvature, size_t d)
 {
-    size_t n = forward_measurements(f->forward), filled = 0;
-    double grip[4] = {0};
-    const double *rows[4] = {NULL};
+    size_t n = forward_measurements(f->forward);
     gather(f, curvature);
-    for (size_t j = 0; j < d; j++) {
-        memset(f->hessian + j * f->stride, 0, f->stride * sizeof *f->hessian);
-        f->hessian[j * f->stride + j] = 1.0;
-        f->gradient[j] = f->theta[j];
-    }
-    for (size_t i = 0; i < n; i++) {
-        const double *restrict row = forward_gradient(f->forward, i);
-        double pull = f->pull[i];
-        if (pull != 0.0)
-            for (size_t j = 0; j < d; j++)
-                f->gradient[j] -= pull * row[j];
-        if (f->grip[i] == 0.0)
-            continue;
-        grip[filled] = f->grip[i];
-        rows[filled++] = row;
-        if (filled == 4) {
-            add_four(f->hessian, f->stride, d, grip, rows);
-            filled = 0;
-        }
-    }
-    if (filled > 0) {
-        for (size_t i = filled; i < 4; i++) {
-            grip[i] = 0.0;
-            rows[i] = rows[0];
-        }
-        add_four(f->hessian, f->stride, d, grip, rows);
-    }
+    equations_begin(&f->equations, d);
+    for (size_t i = 0; i < n; i++)
+        if (f->grip[i] != 0.0 || f->pull[i] != 0.0)
+            equations_add(&f->equations, forward_slopes(f->forward, i), f->grip[i], f->pull[i]);
+    equations_finish(&f->equations, f->forward, f->theta);
 }
 
 /*
@@ -261,9 +212,9 @@ static void normal_equations(struct fitter *f, enum curvature curvature, size_t 
 static void add_second_derivatives(struct fitter *f, size_t d)
 {
     for (size_t j = 0; j < d; j++) {
-        double second = f->wiring->parameters[j].sigma * (f->gradient[j] - f->theta[j]);
+        double second = f->wiring->parameters[j].sigma * (f->equations.gradient[j] - f->theta[j]);
         if (second > 0.0)
-            f->hessian[j * f->stride + j] += second;
+            f->equations.hessian[j * f->equations.stride + j] += second;
     }
 }
 
@@ -303,22 +254,42 @@ static double descend(struct fitter *f, enum noise noise, size_t d, double *valu
     return 0.0;
 }
 
-/* The Newton step at θ, shortened; returns the decrease of F it promises, ½ gᵀH⁻¹g. Negative: the
- * arithmetic failed. */
+/* The step −H⁻¹g, shortened; returns the decrease of F it promises, ½ gᵀH⁻¹g. */
+static double solve_step(struct fitter *f, size_t d)
+{
+    const double *gradient = f->equations.gradient;
+    double promise = 0.0;
+    for (size_t j = 0; j < d; j++)
+        f->step[j] = -gradient[j];
+    cholesky_solve(f->equations.hessian, d, f->equations.stride, f->step);
+    for (size_t j = 0; j < d; j++)
+        promise -= 0.5 * f->step[j] * gradient[j];
+    shorten(f->step, d);
+    return fmax(promise, 0.0);
+}
+
+/* The Newton step at θ, and what it promises. Negative: the arithmetic failed. */
 static double newton_step(struct fitter *f, enum curvature curvature, size_t d)
 {
     normal_equations(f, curvature, d);
     add_second_derivatives(f, d);
-    if (!cholesky_factor(f->hessian, d, f->stride))
+    if (!cholesky_factor(f->equations.hessian, d, f->equations.stride))
         return -1.0;
-    double promise = 0.0;
-    for (size_t j = 0; j < d; j++)
-        f->step[j] = -f->gradient[j];
-    cholesky_solve(f->hessian, d, f->stride, f->step);
-    for (size_t j = 0; j < d; j++)
-        promise -= 0.5 * f->step[j] * f->gradient[j];
-    shorten(f->step, d);
-    return fmax(promise, 0.0);
+    return solve_step(f, d);
+}
+
+/* The same with H as it was factored last, at an earlier θ (the chord method: Ortega and Rheinboldt,
+ * "Iterative Solution of Nonlinear Equations in Several Variables", 1970, 7.1). */
+static double chord_step(struct fitter *f, size_t d)
+{
+    size_t n = forward_measurements(f->forward);
+    gather(f, CURVATURE_INLIERS);
+    equations_begin_gradient(&f->equations, d);
+    for (size_t i = 0; i < n; i++)
+        if (f->pull[i] != 0.0)
+            equations_add_gradient(&f->equations, forward_slopes(f->forward, i), f->pull[i]);
+    equations_finish_gradient(&f->equations, f->forward, f->theta);
+    return solve_step(f, d);
 }
 
 /* When to stop: at a promise below `promise`, or below `share` of what F is; or, with log Z as good
@@ -327,16 +298,14 @@ struct patience {
     double promise, share, hopeless;
 };
 
-/* What is still to come may be more than one step promises, but hardly by so much. */
-static const double promise_kept = 10.0, promise_slack = 1.0;
-
 /* A decrease of F, promised by the step before. */
 static const double near_optimum = 0.1;
 
-/* A whole step that kept its promise to a tenth leaves less than a tenth of it to be had. */
-static bool kept_its_promise(double scale, double promise, double decrease)
+/* Whether a whole step gave what it promised, but for a share of it: to a tenth, and less than a tenth
+ * is left to be had; to a third, and the same H serves for the next step. */
+static bool kept_its_promise(double scale, double promise, double decrease, double share)
 {
-    return scale == 1.0 && fabs(decrease - promise) < 0.1 * promise;
+    return scale == 1.0 && fabs(decrease - promise) < share * promise;
 }
 
 /* F where the forward model was evaluated last, which must be f->theta. */
@@ -357,29 +326,41 @@ static bool may_tip(const struct fitter *f)
     return false;
 }
 
-/* What F cannot fall below, whatever θ: every reading fitted, no penalty. */
-static double least_objective(const struct fitter *f)
+/* The most the log-likelihood can be: every reading fitted, but for those written off, if they are. */
+static double best_likelihood(const struct fitter *f, bool written_off_stay)
 {
     double sum = 0.0;
     for (size_t i = 0; i < f->n_observations; i++) {
         const struct observation *o = &f->observations[i];
-        if (observed(f, o))
-            sum -= log_mixture(o, o->ohms, NULL, NULL);
+        if (!forward_reachable(f->forward, o->measurement))
+            sum += o->log_no_path;
+        else if (written_off_stay && !o->open && f->weights[i] <= 1e-6)
+            sum += o->log_misread;
         else
-            sum -= forward_reachable(f->forward, o->measurement) ? f->log_open_with_path
-                                                                 : o->log_no_path;
+            sum += o->log_best;
     }
     return sum;
 }
 
-/* What log Z can hardly exceed, F being `value` and the next step promising so much less; the factor
- * is of that step. The determinant changes little from here to the optimum, so most of it counts. */
-static double hardly_exceeded(const struct fitter *f, size_t d, double value, double promise)
+/* By how much F hardly falls by more, the next step promising `promise`; measured on simulated jobs. With
+ * a reading about to tip over it can be more, but not once the steps have become small. */
+static double most_to_come(const struct fitter *f, double promise)
 {
-    double log_det = cholesky_log_det(f->hessian, d, f->stride);
-    if (may_tip(f))
-        return -least_objective(f);
-    return promise_kept * promise + promise_slack - value - 0.5 * fmax(0.0, 0.8 * log_det - 4.0);
+    if (!may_tip(f))
+        return 10.0 * promise + 1.0;
+    return 30.0 * promise + (promise < 0.01 ? 5.0 : 25.0);
+}
+
+/* What log Z may come to, F being `value` and the next step promising so much less; the factor is of
+ * that step. The determinant changes little from here to the optimum, so most of it counts. */
+static struct prospect judge(const struct fitter *f, size_t d, double value, double promise)
+{
+    double log_det = cholesky_log_det(f->equations.hessian, d, f->equations.stride);
+    double most = most_to_come(f, promise) - value;
+    return (struct prospect){
+        .most = fmin(most, best_likelihood(f, true)) - 0.5 * fmax(0.0, 0.8 * log_det - 4.0),
+        .likely = promise - value - 0.5 * log_det,
+    };
 }
 
 /*
@@ -390,6 +371,7 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
                      struct fit *fit)
 {
     double value = objective_here(f, noise, d), promise = INFINITY;
+    bool chord = false;
     fit->converged = false;
     for (int iteration = 0; isfinite(value); iteration++) {
         /* Longer steps only once near an optimum: further off they can jump past it, into one that
@@ -397,13 +379,14 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
         bool near = noise == NOISE_MIXTURE && promise < near_optimum;
         promise = f->step_promise;
         if (promise < 0.0)
-            promise = newton_step(f, near ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
+            promise = chord ? chord_step(f, d)
+                            : newton_step(f, near ? CURVATURE_OBSERVED : CURVATURE_INLIERS, d);
         f->step_promise = -1.0;
         if (promise < 0.0)
             return false;
         fit->objective = value;
         fit->abandoned = patience.hopeless > -INFINITY &&
-                         hardly_exceeded(f, d, value, promise) < patience.hopeless;
+                         judge(f, d, value, promise).most < patience.hopeless;
         double enough = fmax(patience.promise, patience.share * value), before = value;
         fit->converged = promise < enough;
         if (fit->abandoned || fit->converged || iteration == MOST_ITERATIONS)
@@ -411,17 +394,27 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
         fit->iterations++;
         double scale = descend(f, noise, d, &value);
         if (scale == 0.0) {
-            /* At the floor of the arithmetic: put back what belongs to θ. */
-            fit->converged = true;
-            return isfinite(objective(f, noise, f->theta, d));
+            /* At the floor of the arithmetic, if H is of here: put back what belongs to θ. */
+            if (!isfinite(objective(f, noise, f->theta, d)))
+                return false;
+            fit->converged = !chord;
+            if (fit->converged)
+                return true;
         }
-        if (promise < 10.0 * enough && kept_its_promise(scale, promise, before - value)) {
+        double decrease = before - value;
+        if (promise < 10.0 * enough && kept_its_promise(scale, promise, decrease, 0.1)) {
             fit->objective = value;
             fit->converged = true;
             return true;
         }
+        chord = noise == NOISE_NORMAL && kept_its_promise(scale, promise, decrease, 0.3);
     }
     return false;
+}
+
+double fitter_ceiling(const struct fitter *f)
+{
+    return best_likelihood(f, false);
 }
 
 enum rf_status fitter_analyse(struct fitter *f, const struct wiring *wiring)
@@ -433,7 +426,7 @@ enum rf_status fitter_analyse(struct fitter *f, const struct wiring *wiring)
 enum rf_status fitter_fit_normal(struct fitter *f, const double start[], struct fit *fit)
 {
     size_t d = (size_t)f->wiring->n_parameters;
-    *fit = (struct fit){.n_parameters = d, .stride = f->stride, .theta = f->theta};
+    *fit = (struct fit){.n_parameters = d, .stride = f->equations.stride, .theta = f->theta};
     if (start != NULL)
         memcpy(f->theta, start, d * sizeof *start);
     else
@@ -449,40 +442,40 @@ enum rf_status fitter_fit_normal(struct fitter *f, const double start[], struct 
 enum rf_status fitter_fit_mixture(struct fitter *f, double hopeless, struct fit *fit)
 {
     size_t d = (size_t)f->wiring->n_parameters, iterations = fit->iterations;
-    *fit = (struct fit){.n_parameters = d, .stride = f->stride, .iterations = iterations};
+    *fit = (struct fit){.n_parameters = d, .stride = f->equations.stride, .iterations = iterations};
     struct patience patience = {.promise = 1e-5, .hopeless = hopeless};
     if (!minimise(f, NOISE_MIXTURE, d, patience, fit))
         return RF_NUMERICAL;
     double value = objective_here(f, NOISE_MIXTURE, d);
     normal_equations(f, CURVATURE_INLIERS, d);
-    if (!cholesky_factor(f->hessian, d, f->stride))
+    if (!cholesky_factor(f->equations.hessian, d, f->equations.stride))
         return RF_NUMERICAL;
     fit->penalty = half_square(f->theta, d);
     fit->log_likelihood = fit->penalty - value;
-    fit->log_det = cholesky_log_det(f->hessian, d, f->stride);
+    fit->log_det = cholesky_log_det(f->equations.hessian, d, f->equations.stride);
     fit->log_evidence = -value - 0.5 * fit->log_det;
     fit->theta = f->theta;
-    fit->factor = f->hessian;
+    fit->factor = f->equations.hessian;
     fit->weights = f->weights;
     fit->z = f->z;
     return isfinite(fit->log_evidence) ? RF_OK : RF_NUMERICAL;
 }
 
-enum rf_status fitter_prospect(struct fitter *f, double *most)
+enum rf_status fitter_prospect(struct fitter *f, struct prospect *prospect)
 {
     size_t d = (size_t)f->wiring->n_parameters;
     double value = objective_here(f, NOISE_MIXTURE, d);
     f->step_promise = isfinite(value) ? newton_step(f, CURVATURE_INLIERS, d) : -1.0;
     if (f->step_promise < 0.0)
         return RF_NUMERICAL;
-    *most = hardly_exceeded(f, d, value, f->step_promise);
+    *prospect = judge(f, d, value, f->step_promise);
     return RF_OK;
 }
 
 enum rf_status fitter_resume(struct fitter *f, const double theta[], struct fit *fit)
 {
     size_t d = (size_t)f->wiring->n_parameters;
-    *fit = (struct fit){.n_parameters = d, .stride = f->stride};
+    *fit = (struct fit){.n_parameters = d, .stride = f->equations.stride};
     memcpy(f->theta, theta, d * sizeof *theta);
     f->step_promise = -1.0;
     return forward_evaluate(f->forward, f->theta);

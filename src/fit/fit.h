@@ -67,9 +67,17 @@ enum rf_status fitter_fit_normal(struct fitter *fitter, const double start[], st
 enum rf_status fitter_fit_mixture(struct fitter *fitter, double hopeless, struct fit *fit);
 enum rf_status fitter_resume(struct fitter *fitter, const double theta[], struct fit *fit);
 
-/* What log Z can hardly exceed, from how the mixture stands where the first stage ended.
- * RF_NUMERICAL. */
-enum rf_status fitter_prospect(struct fitter *fitter, double *most);
+/* What log Z of the wiring analysed cannot exceed: its paths and the readings over range say so,
+ * before anything is evaluated. */
+double fitter_ceiling(const struct fitter *fitter);
+
+/* What log Z may come to, from how the mixture stands where the first stage ended. */
+struct prospect {
+    double most;   /* what it can hardly exceed */
+    double likely; /* what the next step promises */
+};
+/* RF_NUMERICAL. */
+enum rf_status fitter_prospect(struct fitter *fitter, struct prospect *prospect);
 
 /* Standard deviation of θ_j under the fit, from its factor; `scratch` holds n_parameters. */
 double fit_parameter_sigma(const struct fit *fit, size_t j, double scratch[]);

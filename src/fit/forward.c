@@ -6,10 +6,25 @@
 #include <math.h>
 #include <string.h>
 
-/* Columns in a row that one factor scales, and lengths that are in a row, too. */
-struct stretch {
-    size_t column, n;
-    int length, factor;
+/* Columns in a row whose lengths are runs in a row, of the same cable. */
+struct cable {
+    size_t from, to; /* columns */
+    int run;         /* of column `from`; −1: one column that no run scales */
+    int length, factor; /* the parameters that scale it; the sink: none */
+    double rate;     /* Ω at θ = 0 per metre of the run as recorded */
+    double rate_now; /* at θ */
+};
+
+/*
+ * ∂R/∂θ over the runs, of a probe: a run's share is its resistance times i², and i is the same all
+ * along a stretch. Divided by the run's length it therefore changes in few places only: at `step_run`.
+ * A piece is where a stretch and a cable overlap; it adds what it has per metre at one step and takes
+ * it off again at another.
+ */
+struct piece {
+    size_t stretch, cable;
+    size_t from, to; /* columns */
+    int begin, end;  /* steps */
 };
 
 /* One set-up at the board, with everything that is measured in it. */
@@ -23,11 +38,17 @@ struct board {
 
     size_t n_columns;
     double *ohms; /* [column] at θ = 0 */
-    int *length;  /* [column] the parameters that scale it; n_parameters: none */
+    int *length;  /* [column] the parameters that scale it; the sink: none */
     int *factor;
     double *r; /* [column] */
-    size_t n_stretches;
-    struct stretch *stretches;
+    size_t n_cables, n_pieces;
+    struct cable *cables;
+    size_t max_pieces;
+    size_t *first_piece; /* [probe], and the end behind the last */
+    struct piece *pieces;
+    int *n_steps;        /* [probe] */
+    int *step_run;       /* [probe × max_steps] */
+    double *current;     /* [stretch of one probe] */
 };
 
 struct target {
@@ -42,14 +63,20 @@ struct forward {
     size_t n_boards;
     struct board boards[N_SETUPS];
     const struct wiring *wiring;
+    int n_runs;
+    double *metres; /* [run] as recorded */
     struct edge *edges; /* scratch of the analysis */
     int *wire_of_edge;
-    double *factors; /* [parameter] exp(σθ), then a 1 */
-    double *power;   /* [column] */
+    double *factors; /* [parameter] exp(σθ), then a 1: the sink, the parameter that is none */
+    double *scale;   /* [run] σ × its length at θ, m */
+    double *other_scale; /* [MAX_OTHERS] σ × gain; 0 from the sink on */
     bool *reachable; /* [measurement] */
     double *mean;
-    double *gradient; /* n × stride */
-    size_t stride;
+    struct slopes *slopes; /* [measurement] */
+    double *steps;         /* n × max_steps */
+    double *others;        /* n × MAX_OTHERS */
+    double *gradient;      /* n × stride, written when asked for */
+    size_t stride, max_steps;
 };
 
 enum {
@@ -72,7 +99,12 @@ static void finish_board(struct board *board)
     free(board->length);
     free(board->factor);
     free(board->r);
-    free(board->stretches);
+    free(board->cables);
+    free(board->first_piece);
+    free(board->pieces);
+    free(board->n_steps);
+    free(board->step_run);
+    free(board->current);
 }
 
 void forward_destroy(struct forward *f)
@@ -85,10 +117,15 @@ void forward_destroy(struct forward *f)
     free(f->targets);
     free(f->edges);
     free(f->wire_of_edge);
+    free(f->metres);
     free(f->factors);
-    free(f->power);
+    free(f->scale);
+    free(f->other_scale);
     free(f->reachable);
     free(f->mean);
+    free(f->slopes);
+    free(f->steps);
+    free(f->others);
     free(f->gradient);
     free(f);
 }
@@ -147,7 +184,7 @@ static bool collect_board(struct forward *f, size_t setup, const struct rf_job *
     return true;
 }
 
-static bool size_board(struct board *board, const struct wiring *ring)
+static bool size_board(struct board *board, const struct wiring *ring, size_t max_steps)
 {
     size_t edges = ring->max_wires + 2;
     board->loops =
@@ -156,9 +193,42 @@ static bool size_board(struct board *board, const struct wiring *ring)
     board->length = NEW_ARRAY(int, edges);
     board->factor = NEW_ARRAY(int, edges);
     board->r = NEW_ARRAY(double, edges);
-    board->stretches = NEW_ARRAY(struct stretch, edges);
+    board->cables = NEW_ARRAY(struct cable, edges);
+    board->first_piece = NEW_ARRAY(size_t, board->n_probes + 1);
+    board->pieces = NEW_ARRAY(struct piece, board->n_probes * edges);
+    board->n_steps = NEW_ARRAY(int, board->n_probes);
+    board->step_run = NEW_ARRAY(int, board->n_probes * max_steps);
+    board->current = NEW_ARRAY(double, edges);
     return board->loops != NULL && board->ohms != NULL && board->length != NULL &&
-           board->factor != NULL && board->r != NULL && board->stretches != NULL;
+           board->factor != NULL && board->r != NULL && board->cables != NULL &&
+           board->first_piece != NULL && board->pieces != NULL && board->n_steps != NULL &&
+           board->step_run != NULL && board->current != NULL;
+}
+
+static bool allocate(struct forward *f, const struct wiring *ring, size_t n)
+{
+    size_t edges = ring->max_wires + 2, runs = n_runs(ring->job);
+    f->n_runs = (int)runs;
+    f->stride = (size_t)ring->map.n_common + FAULTS_AT_ONCE + 1;
+    f->max_steps = runs + 1; /* the last: steps behind the last run, which change nothing */
+    f->measurements = NEW_ARRAY(struct measurement, n);
+    f->targets = NEW_ARRAY(struct target, n);
+    f->metres = NEW_ARRAY(double, runs);
+    f->edges = NEW_ARRAY(struct edge, edges);
+    f->wire_of_edge = NEW_ARRAY(int, edges);
+    f->factors = NEW_ARRAY(double, f->stride);
+    f->scale = NEW_ARRAY(double, runs);
+    f->other_scale = NEW_ARRAY(double, MAX_OTHERS);
+    f->reachable = NEW_ARRAY(bool, n);
+    f->mean = NEW_ARRAY(double, n);
+    f->slopes = NEW_ARRAY(struct slopes, n);
+    f->steps = NEW_ARRAY(double, n * f->max_steps);
+    f->others = NEW_ARRAY(double, n * MAX_OTHERS);
+    f->gradient = NEW_ARRAY(double, n * f->stride);
+    return f->measurements != NULL && f->targets != NULL && f->metres != NULL &&
+           f->edges != NULL && f->wire_of_edge != NULL && f->factors != NULL &&
+           f->scale != NULL && f->other_scale != NULL && f->reachable != NULL && f->mean != NULL && f->slopes != NULL &&
+           f->steps != NULL && f->others != NULL && f->gradient != NULL;
 }
 
 struct forward *forward_create(const struct wiring *ring, const struct measurement measurements[],
@@ -167,28 +237,16 @@ struct forward *forward_create(const struct wiring *ring, const struct measureme
     struct forward *f = NEW(struct forward);
     if (f == NULL)
         return NULL;
-    size_t edges = ring->max_wires + 2;
     f->n = n;
-    /* Room for the parameter that is none, and whole blocks of four for those who read rows so. */
-    f->stride = ((size_t)ring->map.n_common + FAULTS_AT_ONCE + 1 + 3) & ~(size_t)3;
-    f->measurements = NEW_ARRAY(struct measurement, n);
-    f->targets = NEW_ARRAY(struct target, n);
-    f->edges = NEW_ARRAY(struct edge, edges);
-    f->wire_of_edge = NEW_ARRAY(int, edges);
-    f->factors = NEW_ARRAY(double, f->stride);
-    f->power = NEW_ARRAY(double, edges);
-    f->reachable = NEW_ARRAY(bool, n);
-    f->mean = NEW_ARRAY(double, n);
-    f->gradient = NEW_ARRAY(double, n * f->stride);
-    bool ok = f->measurements != NULL && f->targets != NULL && f->edges != NULL &&
-              f->wire_of_edge != NULL && f->factors != NULL && f->power != NULL &&
-              f->reachable != NULL && f->mean != NULL && f->gradient != NULL;
+    bool ok = allocate(f, ring, n);
     if (ok && n > 0)
         memcpy(f->measurements, measurements, n * sizeof *measurements);
+    for (int run = 0; ok && run < f->n_runs; run++)
+        f->metres[run] = ring->wires[run].metres;
     for (size_t setup = 0; ok && setup < N_SETUPS; setup++)
         ok = collect_board(f, setup, ring->job);
     for (size_t b = 0; ok && b < f->n_boards; b++)
-        ok = size_board(&f->boards[b], ring);
+        ok = size_board(&f->boards[b], ring, f->max_steps);
     if (ok)
         return f;
     forward_destroy(f);
@@ -223,35 +281,65 @@ static void scale_columns(struct forward *f, struct board *board)
     }
 }
 
-static void find_stretches(struct board *board)
+/* The next run, of cable that is the same but for rounding. */
+static bool continues(const struct cable *cable, const struct cable *next)
 {
-    struct stretch *last = NULL;
-    board->n_stretches = 0;
+    return cable->run >= 0 && next->run == cable->run + (int)(cable->to - cable->from) &&
+           next->factor == cable->factor && fabs(next->rate - cable->rate) <= 1e-12 * cable->rate;
+}
+
+static void find_cables(const struct forward *f, struct board *board)
+{
+    board->n_cables = 0;
     for (size_t c = 0; c < board->n_columns; c++) {
-        if (last != NULL && board->factor[c] == last->factor &&
-            board->length[c] == last->length + (int)last->n) {
-            last->n++;
-            continue;
+        struct cable one = {.from = c, .to = c + 1, .run = -1};
+        one.length = board->length[c];
+        one.factor = board->factor[c];
+        if (one.length < f->n_runs) {
+            one.run = one.length;
+            one.rate = board->ohms[c] / f->metres[one.run];
         }
-        last = &board->stretches[board->n_stretches++];
-        *last = (struct stretch){c, 1, board->length[c], board->factor[c]};
+        struct cable *last = &board->cables[board->n_cables - (board->n_cables > 0)];
+        if (board->n_cables > 0 && continues(last, &one))
+            last->to++;
+        else
+            board->cables[board->n_cables++] = one;
     }
 }
 
-/* Adds each column's power to the gradients of the two parameters that scale it. */
-static void add_powers(const struct board *board, const double *restrict power,
-                       double *restrict gradient)
+/* The step at a run, added where there is none yet. */
+static int step_at(const struct forward *f, struct board *board, size_t probe, int run)
 {
-    for (size_t s = 0; s < board->n_stretches; s++) {
-        const struct stretch *stretch = &board->stretches[s];
-        double *restrict lengths = gradient + stretch->length;
-        double sum = 0.0;
-        for (size_t k = 0; k < stretch->n; k++)
-            lengths[k] += power[stretch->column + k];
-        for (size_t k = 0; k < stretch->n; k++)
-            sum += power[stretch->column + k];
-        gradient[stretch->factor] += sum;
-    }
+    int *runs = board->step_run + probe * f->max_steps, n = board->n_steps[probe];
+    if (run >= f->n_runs)
+        return f->n_runs; /* none: nothing is behind the last */
+    for (int i = 0; i < n; i++)
+        if (runs[i] == run)
+            return i;
+    runs[n] = run;
+    return board->n_steps[probe]++;
+}
+
+static void find_pieces(const struct forward *f, struct board *board, size_t probe)
+{
+    const struct stretch *stretches = NULL;
+    size_t n = loops_stretches(board->loops, probe, &stretches), cable = 0;
+    board->n_steps[probe] = 0;
+    for (size_t s = 0; s < n; s++)
+        for (size_t c = stretches[s].from; c < stretches[s].to;) {
+            while (board->cables[cable].to <= c)
+                cable++;
+            const struct cable *here = &board->cables[cable];
+            struct piece *piece = &board->pieces[board->n_pieces++];
+            *piece = (struct piece){.stretch = s, .cable = cable, .from = c};
+            piece->to = here->to < stretches[s].to ? here->to : stretches[s].to;
+            if (here->run >= 0) {
+                int run = here->run + (int)(c - here->from);
+                piece->begin = step_at(f, board, probe, run);
+                piece->end = step_at(f, board, probe, run + (int)(piece->to - c));
+            }
+            c = piece->to;
+        }
 }
 
 static enum rf_status analyse_board(struct forward *f, struct board *board)
@@ -263,11 +351,17 @@ static enum rf_status analyse_board(struct forward *f, struct board *board)
     size_t n_edges = wiring_join(w, board->setup, f->edges, f->wire_of_edge);
     enum rf_status status = loops_analyse(board->loops, (size_t)w->n_nodes, f->edges, n_edges,
                                           board->probes, board->n_probes);
-    if (status == RF_OK) {
-        scale_columns(f, board);
-        find_stretches(board);
+    if (status != RF_OK)
+        return status;
+    scale_columns(f, board);
+    find_cables(f, board);
+    board->n_pieces = 0;
+    for (size_t i = 0; i < board->n_probes; i++) {
+        board->first_piece[i] = board->n_pieces;
+        find_pieces(f, board, i);
     }
-    return status;
+    board->first_piece[board->n_probes] = board->n_pieces;
+    return RF_OK;
 }
 
 static bool target_reachable(const struct forward *f, const struct target *target)
@@ -305,7 +399,7 @@ static size_t highest_probe(struct board *board)
     for (size_t i = board->first_point; i < board->first_point + board->n_points; i++) {
         if (!loops_has_path(board->loops, i))
             continue;
-        double r = loops_read(board->loops, i, NULL, NULL);
+        double r = loops_read_stretches(board->loops, i, board->current);
         if (r > most) {
             most = r;
             highest = i;
@@ -314,73 +408,145 @@ static size_t highest_probe(struct board *board)
     return highest;
 }
 
-/* Adds the instrument's share: gain, the offsets, a lead left un-nulled. */
-static void read_through_instrument(struct forward *f, size_t i, double resistance,
-                                    const double theta[])
+/* R of a probe, and its derivatives by the logs of what scales it. */
+static double read_slopes(const struct forward *f, const struct board *board, size_t probe,
+                          double *restrict steps, double others[restrict MAX_OTHERS])
+{
+    double resistance = loops_read_stretches(board->loops, probe, board->current);
+    const struct piece *pieces = board->pieces, *end = pieces + board->first_piece[probe + 1];
+    int n_runs = f->n_runs;
+    for (int i = 0; i < board->n_steps[probe]; i++)
+        steps[i] = 0.0;
+    for (const struct piece *piece = pieces + board->first_piece[probe]; piece < end; piece++) {
+        const struct cable *cable = &board->cables[piece->cable];
+        double current = board->current[piece->stretch], square = current * current;
+        double power = square * loops_sum(board->loops, piece->from, piece->to);
+        if (cable->run >= 0) {
+            steps[piece->begin] += square * cable->rate_now;
+            steps[piece->end] -= square * cable->rate_now;
+        } else {
+            others[cable->length - n_runs] += power;
+        }
+        others[cable->factor - n_runs] += power;
+    }
+    return resistance;
+}
+
+/* The mean: the instrument's gain and offsets, a lead left un-nulled. `others` (may be NULL) comes with
+ * derivatives of R by logs, and leaves with those of the mean by θ. */
+static double read_through_instrument(const struct forward *f, const struct measurement *measurement,
+                                      double resistance, const double theta[], double *others)
 {
     const struct wiring *w = f->wiring;
     const struct parameter_map *map = &w->map;
-    const struct parameter *p = w->parameters;
-    double *gradient = f->gradient + i * f->stride;
-    double gain = f->factors[map->gain];
-    enum joining joining = setups[f->measurements[i].setup].joining;
-    enum spot spot = f->measurements[i].spot;
+    enum joining joining = setups[measurement->setup].joining;
+    bool through_face = measurement->spot == SPOT_POINT || measurement->spot == SPOT_HIGHEST;
+    bool by_lead = joining == JOIN_LEAD_OUT || joining == JOIN_LEAD_IN;
+    double by_gain = f->factors[map->gain] * resistance, mean = by_gain;
+    double lead = w->parameters[map->lead].sigma, face = w->parameters[map->face].sigma;
+    double wander = w->parameters[map->wander].sigma, offset = 0.0;
+    mean += lead * theta[map->lead];
+    if (through_face)
+        mean += w->parameters[map->face].mean + face * theta[map->face];
+    if (by_lead)
+        mean += wander * theta[map->wander];
+    if (w->offset_parameter != NO_PARAMETER)
+        mean += offset = w->offset_ohms * f->factors[w->offset_parameter];
+    if (others == NULL)
+        return mean;
+    others -= f->n_runs;
+    for (int j = f->n_runs; j < f->n_runs + MAX_OTHERS; j++)
+        others[j] *= f->other_scale[j - f->n_runs];
+    others[map->gain] = w->parameters[map->gain].sigma * by_gain;
+    others[map->lead] = lead;
+    others[map->face] = through_face ? face : 0.0;
+    others[map->wander] = by_lead ? wander : 0.0;
+    if (w->offset_parameter != NO_PARAMETER)
+        others[w->offset_parameter] = w->parameters[w->offset_parameter].sigma * offset;
+    return mean;
+}
 
-    for (int j = 0; j < w->n_parameters; j++)
-        gradient[j] *= gain * p[j].sigma;
-    double mean = gain * resistance;
-    gradient[map->gain] = p[map->gain].sigma * mean;
-    mean += p[map->lead].sigma * theta[map->lead];
-    gradient[map->lead] = p[map->lead].sigma;
-    if (spot == SPOT_POINT || spot == SPOT_HIGHEST) {
-        mean += p[map->face].mean + p[map->face].sigma * theta[map->face];
-        gradient[map->face] = p[map->face].sigma;
-    }
-    if (joining == JOIN_LEAD_OUT || joining == JOIN_LEAD_IN) {
-        mean += p[map->wander].sigma * theta[map->wander];
-        gradient[map->wander] = p[map->wander].sigma;
-    }
-    if (w->offset_parameter != NO_PARAMETER) {
-        double offset = w->offset_ohms * f->factors[w->offset_parameter];
-        mean += offset;
-        gradient[w->offset_parameter] = p[w->offset_parameter].sigma * offset;
-    }
-    f->mean[i] = mean;
+static size_t probe_of(const struct forward *f, struct board *board, size_t i)
+{
+    return f->targets[i].highest ? highest_probe(board) : f->targets[i].probe;
 }
 
 static void evaluate_measurement(struct forward *f, size_t i, const double theta[])
 {
-    const struct target *target = &f->targets[i];
-    struct board *board = &f->boards[target->board];
-    double *gradient = f->gradient + i * f->stride;
-    memset(gradient, 0, ((size_t)f->wiring->n_parameters + 1) * sizeof *gradient);
+    struct board *board = &f->boards[f->targets[i].board];
+    double *steps = f->steps + i * f->max_steps, gain = f->factors[f->wiring->map.gain];
+    double others[MAX_OTHERS] = {0};
+    struct slopes *slopes = &f->slopes[i];
+    *slopes = (struct slopes){.steps = steps, .others = f->others + i * MAX_OTHERS};
     f->mean[i] = 0.0;
-    if (!f->reachable[i])
-        return;
-    size_t probe = target->highest ? highest_probe(board) : target->probe;
-    double resistance = loops_read(board->loops, probe, f->power, NULL);
-    add_powers(board, f->power, gradient);
-    read_through_instrument(f, i, resistance, theta);
+    if (f->reachable[i]) {
+        size_t probe = probe_of(f, board, i);
+        double resistance = read_slopes(f, board, probe, steps, others);
+        slopes->n_steps = (size_t)board->n_steps[probe];
+        slopes->step_run = board->step_run + probe * f->max_steps;
+        for (size_t k = 0; k < slopes->n_steps; k++)
+            steps[k] *= gain;
+        f->mean[i] = read_through_instrument(f, &f->measurements[i], resistance, theta, others);
+    }
+    memcpy(f->others + i * MAX_OTHERS, others, sizeof others);
 }
 
-enum rf_status forward_evaluate(struct forward *f, const double theta[])
+static enum rf_status evaluate_board(struct forward *f, struct board *board)
+{
+    for (size_t c = 0; c < board->n_columns; c++)
+        board->r[c] = board->ohms[c] * f->factors[board->length[c]] * f->factors[board->factor[c]];
+    for (size_t i = 0; i < board->n_cables; i++)
+        board->cables[i].rate_now = board->cables[i].rate * f->factors[board->cables[i].factor];
+    return loops_factor(board->loops, board->r);
+}
+
+/* Everything that θ changes before a single reading is taken. */
+static enum rf_status evaluate_boards(struct forward *f, const double theta[])
 {
     const struct wiring *w = f->wiring;
     for (int j = 0; j < w->n_parameters; j++)
         f->factors[j] = exp(w->parameters[j].sigma * theta[j]);
     f->factors[w->n_parameters] = 1.0;
     for (size_t b = 0; b < f->n_boards; b++) {
-        struct board *board = &f->boards[b];
-        for (size_t c = 0; c < board->n_columns; c++)
-            board->r[c] =
-                board->ohms[c] * f->factors[board->length[c]] * f->factors[board->factor[c]];
-        enum rf_status status = loops_factor(board->loops, board->r);
+        enum rf_status status = evaluate_board(f, &f->boards[b]);
         if (status != RF_OK)
             return status;
+    }
+    return RF_OK;
+}
+
+enum rf_status forward_evaluate(struct forward *f, const double theta[])
+{
+    const struct wiring *w = f->wiring;
+    enum rf_status status = evaluate_boards(f, theta);
+    if (status != RF_OK)
+        return status;
+    for (int run = 0; run < f->n_runs; run++)
+        f->scale[run] = w->parameters[run].sigma * f->metres[run] * f->factors[run];
+    for (int k = 0; k < MAX_OTHERS; k++) {
+        int j = f->n_runs + k;
+        f->other_scale[k] =
+            j < w->n_parameters ? w->parameters[j].sigma * f->factors[w->map.gain] : 0.0;
     }
     for (size_t i = 0; i < f->n; i++)
         evaluate_measurement(f, i, theta);
     return RF_OK;
+}
+
+enum rf_status forward_evaluate_means(struct forward *f, const double theta[])
+{
+    enum rf_status status = evaluate_boards(f, theta);
+    for (size_t i = 0; i < f->n && status == RF_OK; i++) {
+        struct board *board = &f->boards[f->targets[i].board];
+        f->mean[i] = 0.0;
+        if (!f->reachable[i])
+            continue;
+        double resistance =
+            loops_read_stretches(board->loops, probe_of(f, board, i), board->current);
+        f->mean[i] =
+            read_through_instrument(f, &f->measurements[i], resistance, theta, NULL);
+    }
+    return status;
 }
 
 double forward_mean(const struct forward *f, size_t i)
@@ -388,7 +554,33 @@ double forward_mean(const struct forward *f, size_t i)
     return f->mean[i];
 }
 
+size_t forward_runs(const struct forward *f)
+{
+    return (size_t)f->n_runs;
+}
+
+const double *forward_scale(const struct forward *f)
+{
+    return f->scale;
+}
+
+const struct slopes *forward_slopes(const struct forward *f, size_t i)
+{
+    return &f->slopes[i];
+}
+
 const double *forward_gradient(const struct forward *f, size_t i)
 {
-    return f->gradient + i * f->stride;
+    const struct slopes *slopes = &f->slopes[i];
+    double *gradient = f->gradient + i * f->stride, sum = 0.0;
+    memset(gradient, 0, (size_t)f->n_runs * sizeof *gradient);
+    for (size_t k = 0; k < slopes->n_steps; k++)
+        gradient[slopes->step_run[k]] = slopes->steps[k];
+    for (int run = 0; run < f->n_runs; run++) {
+        sum += gradient[run];
+        gradient[run] = sum * f->scale[run];
+    }
+    memcpy(gradient + f->n_runs, slopes->others,
+           (size_t)(f->wiring->n_parameters - f->n_runs) * sizeof *gradient);
+    return gradient;
 }

@@ -47,9 +47,33 @@ bool forward_reachable(const struct forward *forward, size_t i);
 /* θ: wiring->n_parameters. RF_NUMERICAL where a resistance is not a positive number. */
 enum rf_status forward_evaluate(struct forward *forward, const double theta[]);
 
+/* The same without derivatives, at less than half the cost. */
+enum rf_status forward_evaluate_means(struct forward *forward, const double theta[]);
+
 /* The values evaluated last: Ω; 0 where there is no path. */
 double forward_mean(const struct forward *forward, size_t i);
-/* ∂mean_i/∂θ_j, Ω per whitened unit, n_parameters of them. */
+/* ∂mean_i/∂θ_j, Ω per whitened unit, n_parameters of them: written out when asked for, good until
+ * the next evaluation. */
 const double *forward_gradient(const struct forward *forward, size_t i);
+
+/*
+ * The same as it is kept. θ begins with the runs (wiring.h); ∂mean/∂θ_run is scale[run] · s[run] with
+ * s[run] the sum of the steps at that run and before it, and there are few steps, because a stretch of
+ * ring carries one current whatever the number of runs. `others` has ∂mean/∂θ_j for the rest, from
+ * θ_runs on; behind them are zeros.
+ */
+enum {
+    /* Conductors, the CPC not known, the instrument's four, faults', one that is none. */
+    MAX_OTHERS = N_CONDUCTORS + 1 + 4 + FAULTS_AT_ONCE + 1
+};
+struct slopes {
+    size_t n_steps;
+    const int *step_run;
+    const double *steps;  /* Ω/m */
+    const double *others; /* [MAX_OTHERS] Ω per whitened unit */
+};
+size_t forward_runs(const struct forward *forward);
+const double *forward_scale(const struct forward *forward); /* [run] σ × length, m */
+const struct slopes *forward_slopes(const struct forward *forward, size_t i);
 
 #endif

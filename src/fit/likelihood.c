@@ -32,6 +32,7 @@ struct observation observe(const struct reading *reading, size_t measurement, si
     struct observation o = {.measurement = measurement, .open = reading->open};
     if (reading->open) {
         o.log_no_path = log(1.0 - in->open_wrong);
+        o.log_best = log_open_with_path(in);
         return o;
     }
     double density = instrument_misread_density(in, reading->ohms);
@@ -42,6 +43,7 @@ struct observation observe(const struct reading *reading, size_t measurement, si
     o.misread = (1.0 - in->open_wrong) * in->misread * density;
     o.log_misread = log(o.misread);
     o.log_no_path = log(in->open_wrong * density);
+    o.log_best = log_mixture(&o, o.ohms, NULL, NULL);
     return o;
 }
 
@@ -50,16 +52,27 @@ double log_open_with_path(const struct instrument_model *in)
     return log(in->open_wrong);
 }
 
-double log_mixture(const struct observation *o, double mean, double *weight, double *z)
+double log_mixture_term(const struct observation *o, double mean, double *weight, double *z,
+                        double *product)
 {
     double distance = (o->ohms - mean) / o->sigma;
     double log_normal = o->log_peak - 0.5 * distance * distance;
     /* log(e^a + e^b) without overflow: take the larger out. */
-    double larger = fmax(log_normal, o->log_misread);
-    double sum = larger + log1p(exp(-fabs(log_normal - o->log_misread)));
+    double odds = exp(-fabs(log_normal - o->log_misread));
+    bool normal = log_normal > o->log_misread;
+    *weight = (normal ? 1.0 : odds) / (1.0 + odds);
+    *z = distance;
+    *product *= 1.0 + odds;
+    return normal ? log_normal : o->log_misread;
+}
+
+double log_mixture(const struct observation *o, double mean, double *weight, double *z)
+{
+    double w = 1.0, distance = 0.0, product = 1.0;
+    double larger = log_mixture_term(o, mean, &w, &distance, &product);
     if (weight != NULL)
-        *weight = 1.0 / (1.0 + exp(o->log_misread - log_normal));
+        *weight = w;
     if (z != NULL)
         *z = distance;
-    return sum;
+    return larger + log(product);
 }

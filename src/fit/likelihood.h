@@ -23,6 +23,7 @@ struct observation {
     double misread;     /* 0.999 · 0.01 · U(y) */
     double log_misread; /* its log */
     double log_no_path; /* the log-likelihood where there is no path */
+    double log_best;    /* where there is one: what it cannot exceed, whatever the mean */
 };
 
 /* σ(y), Ω: floor, share of the reading, and the display's step. */
@@ -47,5 +48,12 @@ double log_open_with_path(const struct instrument_model *instrument);
 /* Log-likelihood of a finite reading with a path. `weight` (may be NULL) gets the chance that it is
  * not a misread; `z` (may be NULL) its distance from the mean in σ. */
 double log_mixture(const struct observation *observation, double mean, double *weight, double *z);
+
+/* The same for sums over readings: answers the larger of the mixture's two logs, and multiplies
+ * `product` by what the sum of the two is to the larger, 1 to 2; one log of the product, of at most
+ * MIXTURE_PRODUCTS readings, then serves for all of them. */
+enum { MIXTURE_PRODUCTS = 1000 };
+double log_mixture_term(const struct observation *observation, double mean, double *weight,
+                        double *z, double *product);
 
 #endif

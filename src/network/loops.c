@@ -140,7 +140,7 @@ struct loops *loops_create(size_t nodes, size_t edges, size_t probes, size_t n_l
     l->r = NEW_ARRAY(double, edges);
     l->up_to = NEW_ARRAY(double, edges + 1);
     l->factor = NEW_ARRAY(double, n_loops * n_loops);
-    l->loop_flow = NEW_ARRAY(double, n_loops);
+    l->loop_flow = NEW_ARRAY(double, n_loops + 2); /* two are always read */
     l->ohms = NEW_ARRAY(double, edges);
     l->current = NEW_ARRAY(double, edges);
     if (l->leader == NULL || l->parent == NULL || l->parent_edge == NULL ||
@@ -385,8 +385,12 @@ static size_t cut_stretches(const struct loops *l, struct stretch *stretches)
         to = l->section_from[section + 1];
         if (change < l->n_changes && l->changes[change].column < to)
             to = l->changes[change].column;
-        if (path != 0 || looped(l, section))
-            stretches[n++] = (struct stretch){c, to, path, section};
+        if (path == 0 && !looped(l, section))
+            continue;
+        stretches[n] = (struct stretch){.from = c, .to = to, .path = path, .section = section};
+        for (size_t i = 0; i < 2 && i < l->n_loops; i++)
+            stretches[n].signs[i] = l->loop_rows[i * l->n_columns + c];
+        n++;
     }
     return n;
 }
@@ -481,39 +485,57 @@ size_t loops_stretches(const struct loops *l, size_t probe, const struct stretch
     return l->stretch_first[probe + 1] - l->stretch_first[probe];
 }
 
-/* Loop currents for 1 A along the probe's tree path: (C D Cᵀ)⁻¹ C D p. */
+/* Loop currents for 1 A along the probe's tree path, (C D Cᵀ)⁻¹ C D p, where there are more than two
+ * loops. */
 static void solve_loops(struct loops *l, const struct stretch *stretches, size_t n)
 {
-    size_t k = l->n_loops;
-    for (size_t i = 0; i < k; i++)
-        l->loop_flow[i] = 0.0;
+    memset(l->loop_flow, 0, l->n_loops * sizeof *l->loop_flow);
     for (size_t s = 0; s < n; s++) {
         const size_t *first = l->member_first + stretches[s].section;
         double volts = stretches[s].path * l->ohms[s];
-        if (stretches[s].path == 0)
-            continue;
-        for (size_t i = first[0]; i < first[1]; i++)
+        for (size_t i = first[0]; i < first[1] && volts != 0.0; i++)
             l->loop_flow[l->members[i].loop] += l->members[i].sign * volts;
     }
-    if (k == 1)
-        l->loop_flow[0] *= l->factor[0] * l->factor[0];
-    else if (k > 1)
-        cholesky_solve(l->factor, k, k, l->loop_flow);
+    cholesky_solve(l->factor, l->n_loops, l->n_loops, l->loop_flow);
+}
+
+/* The same for one loop or two, or none: `volts` are C D p. */
+static void solve_two(struct loops *l, const double volts[2])
+{
+    const double *U = l->factor; /* with 1/U_ii on its diagonal */
+    double *x = l->loop_flow;
+    if (l->n_loops == 1) {
+        x[0] = volts[0] * U[0] * U[0];
+    } else if (l->n_loops == 2) {
+        double y = volts[0] * U[0];
+        x[1] = (volts[1] - U[1] * y) * U[3] * U[3];
+        x[0] = (y - U[1] * x[1]) * U[0];
+    }
 }
 
 double loops_read_stretches(struct loops *l, size_t probe, double current[])
 {
     const struct stretch *stretches = NULL;
     size_t n = loops_stretches(l, probe, &stretches);
-    double reading = 0.0;
-    for (size_t s = 0; s < n; s++)
-        l->ohms[s] = sum_of(l, stretches[s].from, stretches[s].to);
-    solve_loops(l, stretches, n);
+    double reading = 0.0, volts[2] = {0, 0};
+    for (size_t s = 0; s < n; s++) {
+        double ohms = sum_of(l, stretches[s].from, stretches[s].to);
+        double along = stretches[s].path * ohms;
+        l->ohms[s] = ohms;
+        volts[0] += stretches[s].signs[0] * along;
+        volts[1] += stretches[s].signs[1] * along;
+    }
+    if (l->n_loops <= 2)
+        solve_two(l, volts);
+    else
+        solve_loops(l, stretches, n);
     for (size_t s = 0; s < n; s++) {
         const size_t *first = l->member_first + stretches[s].section;
         double flow = stretches[s].path;
-        for (size_t i = first[0]; i < first[1]; i++)
-            flow -= l->members[i].sign * l->loop_flow[l->members[i].loop];
+        flow -= stretches[s].signs[0] * l->loop_flow[0] + stretches[s].signs[1] * l->loop_flow[1];
+        for (size_t i = first[0]; l->n_loops > 2 && i < first[1]; i++)
+            if (l->members[i].loop >= 2)
+                flow -= l->members[i].sign * l->loop_flow[l->members[i].loop];
         current[s] = flow;
         reading += l->ohms[s] * flow * flow;
     }

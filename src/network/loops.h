@@ -61,8 +61,9 @@ enum rf_status loops_factor(struct loops *loops, const double r[]);
  * for certain is left out. */
 struct stretch {
     size_t from, to; /* columns from … to − 1 */
-    int path;        /* p in them */
-    size_t section;  /* the analysis's own: where C stays the same */
+    double path;     /* p in them */
+    double signs[2]; /* C in them, of the first two loops … */
+    size_t section;  /* … and of all: the analysis's own */
 };
 size_t loops_stretches(const struct loops *loops, size_t probe, const struct stretch **stretches);
 

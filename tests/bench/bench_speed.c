@@ -148,14 +148,14 @@ static enum rf_status floor_step(struct bench *b, struct rf_error *error)
 {
     double theta[b->ring.map.n_common + FAULTS_AT_ONCE];
     struct fit fit;
-    double most = 0;
+    struct prospect prospect;
     memset(theta, 0, sizeof theta);
     for (size_t i = 0; i < b->candidates.n; i++) {
         wiring_copy(&b->wiring, &b->ring);
         hypothesis_apply(&b->candidates.list[i].hypothesis, &b->wiring, NULL);
         if (fitter_analyse(b->fitter, &b->wiring) != RF_OK ||
             fitter_resume(b->fitter, theta, &fit) != RF_OK ||
-            fitter_prospect(b->fitter, &most) != RF_OK)
+            fitter_prospect(b->fitter, &prospect) != RF_OK)
             return fail(error, RF_NUMERICAL, "the floor fails for hypothesis %zu", i);
     }
     return RF_OK;
