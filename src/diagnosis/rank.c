@@ -228,8 +228,10 @@ static bool sort_candidates(struct candidates *candidates)
 
 enum rf_status candidates_sort(struct candidates *candidates, struct rf_error *error)
 {
-    normalise(candidates);
-    return sort_candidates(candidates) ? RF_OK : fail_memory(error);
+    if (!sort_candidates(candidates))
+        return fail_memory(error);
+    normalise(candidates); /* in the order of weight, so that the sum does not depend on any other */
+    return RF_OK;
 }
 
 /* Where the first stage ends without a fault: most faults hardly move the other parameters, so that is
