@@ -5,9 +5,12 @@
 /*
  * For functions whose loops the compiler makes vectors of: one copy of the function for processors
  * with 256-bit vectors (AVX2), one for all others, chosen when the program is loaded. Sums are not
- * reordered and multiplications not fused with additions, so both give the same bits.
+ * reordered and multiplications not fused with additions, so both give the same bits. Not with Clang,
+ * whose older releases give the copies names that other files do not find, nor under sanitizers, which
+ * are not ready when the choice is made.
  */
-#if defined(__x86_64__) && defined(__gnu_linux__) && !defined(__SANITIZE_ADDRESS__)
+#if defined(__x86_64__) && defined(__gnu_linux__) && defined(__GNUC__) && !defined(__clang__) && \
+    !defined(__SANITIZE_ADDRESS__)
 #define WIDE_VECTORS __attribute__((target_clones("avx2", "default")))
 #else
 #define WIDE_VECTORS
