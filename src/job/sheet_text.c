@@ -61,22 +61,30 @@ cJSON *sheet_private_value(const char *cell, char decimal)
     return status == RF_OK || status == RF_MEMORY ? value : cJSON_CreateString(cell);
 }
 
+/* Whether the text as a cell is that text again, whatever decimal mark the sheet turns out to have. */
+static bool reads_as_itself(const char *string)
+{
+    for (const char *mark = ".,"; *mark != '\0'; mark++) {
+        cJSON *back = sheet_private_value(string, *mark);
+        bool same = cJSON_IsString(back) && strcmp(back->valuestring, string) == 0;
+        cJSON_Delete(back);
+        if (!same)
+            return false;
+    }
+    return true;
+}
+
 void sheet_add_private(const cJSON *value, char decimal, struct text *cell)
 {
     if (cJSON_IsNumber(value)) {
         sheet_add_number(value->valuedouble, decimal, cell);
         return;
     }
-    if (cJSON_IsString(value)) {
-        cJSON *back = value->valuestring[0] != '\0' /* an empty cell says nothing */
-                          ? sheet_private_value(value->valuestring, decimal)
-                          : NULL;
-        bool same = cJSON_IsString(back) && strcmp(back->valuestring, value->valuestring) == 0;
-        cJSON_Delete(back);
-        if (same) {
-            text_add(cell, value->valuestring);
-            return;
-        }
+    /* An empty cell says nothing. */
+    if (cJSON_IsString(value) && value->valuestring[0] != '\0' &&
+        reads_as_itself(value->valuestring)) {
+        text_add(cell, value->valuestring);
+        return;
     }
     add_json(value, cell);
 }

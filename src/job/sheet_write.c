@@ -106,6 +106,14 @@ static void add_readings(struct writing *writing, const cJSON *value)
     }
 }
 
+/* The user's own numbers do not show a sheet's decimal mark, and where no other does, it is taken from
+ * the separator. With a point they are read either way. */
+static void add_private(struct writing *writing, const cJSON *own)
+{
+    char decimal = writing->style->separator == ';' ? writing->style->decimal : '.';
+    sheet_add_private(own, decimal, &writing->cell);
+}
+
 /* --- rows of a key --- */
 
 static void put_row(struct writing *writing, const char *key, const cJSON *value)
@@ -146,7 +154,7 @@ static void put_private_rows(struct writing *writing, const cJSON *object, const
         }
         text_add(&writing->cell, path);
         put_word(writing, own->string);
-        sheet_add_private(own, writing->style->decimal, &writing->cell);
+        add_private(writing, own);
         put_cell(writing);
         end_row(writing);
     }
@@ -394,7 +402,7 @@ static void put_place(struct writing *writing, const char *place, const cJSON *p
                                ? member(point, writing->own[i])
                                : member(access, writing->access_own[i - writing->n_own]);
         if (own != NULL)
-            sheet_add_private(own, writing->style->decimal, &writing->cell);
+            add_private(writing, own);
         put_cell(writing);
     }
     for (size_t i = 0; i < writing->n_setups; i++) {
