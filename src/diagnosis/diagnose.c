@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "base/error.h"
 #include "base/memory.h"
+#include "diagnosis/search.h"
 #include "diagnosis/steps.h"
 
 static void finish_ranked(struct ranked *ranked)
@@ -130,7 +131,8 @@ static enum rf_status rank_and_test(struct attempt *attempt, bool screen, struct
 /*
  * Screening judges a fit by its first steps, which can be trusted where something explains the
  * readings. Where nothing seems to, a fit may yet turn a corner late, with many readings to write
- * off; so below this p-value of the misfit test, every fit is followed to its end.
+ * off; so below this p-value of the misfit test, every fit is followed to its end, unless there are too
+ * many (search.h).
  */
 static const double screening_trusted = 0.2;
 
@@ -193,7 +195,8 @@ static enum rf_status try_pairs(const struct attempt *narrow, struct attempt *be
     return status;
 }
 
-/* Puts what explains the readings in the attempt's place, if something does. */
+/* Puts what explains the readings in the attempt's place, if something does. Two defects are not tried
+ * where one alone has so many places that not all are. */
 static enum rf_status try_wider(struct attempt *narrow, const struct rf_models *models,
                                 struct rf_error *error)
 {
@@ -207,7 +210,7 @@ static enum rf_status try_wider(struct attempt *narrow, const struct rf_models *
         return status;
     if (promised > 0.0)
         status = try_widened(narrow, models, &wider, &best, &best_odds, error);
-    if (status == RF_OK || status == RF_NUMERICAL)
+    if ((status == RF_OK || status == RF_NUMERICAL) && !search_is_coarse(&narrow->candidates))
         status = try_pairs(narrow, &best, &best_odds, error);
     if (best.diagnosis != NULL && status != RF_MEMORY) {
         struct attempt swap = *narrow;
@@ -247,7 +250,8 @@ enum rf_status diagnose(const struct rf_job *job, const struct rf_models *models
     *result = NULL;
     if (status == RF_OK)
         status = rank_and_test(&attempt, screen, error);
-    if (status == RF_OK && screen && attempt.diagnosis->misfit.p < screening_trusted)
+    if (status == RF_OK && screen && attempt.diagnosis->misfit.p < screening_trusted &&
+        !search_is_coarse(&attempt.candidates))
         status = rank_and_test(&attempt, false, error);
     if (status == RF_OK && attempt.diagnosis->misfit.p < screening_trusted)
         status = try_wider(&attempt, models, error);

@@ -46,6 +46,7 @@ static bool collect(void *context, const struct fault *fault)
         .hypothesis = {.faults = {*fault}, .n_faults = n_faults},
         .index = candidates->n,
         .log_evidence = -INFINITY,
+        .log_likely = -INFINITY,
     };
     candidates->n++;
     return true;

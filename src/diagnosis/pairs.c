@@ -47,7 +47,7 @@ static bool pair_up(struct candidates *pairs, const struct candidates *singles,
         pair.hypothesis.faults[pair.hypothesis.n_faults++] = with->hypothesis.faults[0];
         pair.log_prior += with->log_prior + log(second_share);
         pair.log_looks += with->log_looks;
-        pair.log_evidence = -INFINITY;
+        pair.log_evidence = pair.log_likely = -INFINITY;
         pair.fitted = false;
         pair.index = pairs->n;
         pairs->list[pairs->n++] = pair;

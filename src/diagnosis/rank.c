@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "base/error.h"
 #include "base/memory.h"
+#include "diagnosis/search.h"
 #include "diagnosis/steps.h"
 
 #include <math.h>
@@ -138,6 +139,7 @@ static enum rf_status fit_or_put_off(struct ranking *r, size_t index)
     if (hopeless > -INFINITY) {
         if (fitter_prospect(r->fitter, &prospect) != RF_OK)
             return RF_NUMERICAL;
+        candidate->log_likely = prospect.likely;
         if (prospect.most < hopeless)
             return RF_OK;
         if (!r->explained && prospect.likely + log_share(candidate) < r->best) {
@@ -160,14 +162,15 @@ static enum rf_status fit_put_off(struct ranking *r, size_t k)
     return fit_mixture(r, candidate, &fit);
 }
 
-static enum rf_status fit_batch(struct ranking *r, size_t first, size_t n, struct rf_error *error)
+static enum rf_status fit_batch(struct ranking *r, const size_t indices[], size_t n,
+                                struct rf_error *error)
 {
     r->n_put_off = 0;
-    for (size_t i = first; i < first + n; i++) {
-        struct candidate *candidate = &r->candidates->list[i];
+    for (size_t i = 0; i < n; i++) {
+        struct candidate *candidate = &r->candidates->list[indices[i]];
         if (candidate->fitted || (r->screen && log_share(candidate) == -INFINITY))
             continue;
-        if (fit_or_put_off(r, i) != RF_OK)
+        if (fit_or_put_off(r, indices[i]) != RF_OK)
             return report_failure(r, candidate, error);
     }
     qsort(r->order, r->n_put_off, sizeof *r->order, by_weight);
@@ -250,11 +253,17 @@ static enum rf_status fit_common(struct ranking *r, struct rf_error *error)
 
 static enum rf_status fit_all(struct ranking *r, struct rf_error *error)
 {
-    enum rf_status status = fit_common(r, error);
-    for (size_t first = 0; first < r->candidates->n && status == RF_OK; first += BATCH) {
-        size_t left = r->candidates->n - first, n = left < BATCH ? left : BATCH;
-        status = fit_batch(r, first, n, error);
+    const size_t *indices = NULL;
+    struct search *search = search_create(r->candidates, r->ring->job->n_places);
+    enum rf_status status = search != NULL ? fit_common(r, error) : fail_memory(error);
+    while (status == RF_OK) {
+        size_t n = search_next(search, r->best - out_of_reach(r->candidates->n), &indices);
+        if (n == 0)
+            break;
+        for (size_t first = 0; first < n && status == RF_OK; first += BATCH)
+            status = fit_batch(r, indices + first, n - first < BATCH ? n - first : BATCH, error);
     }
+    search_destroy(search);
     return status;
 }
 
@@ -266,7 +275,7 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
         .candidates = candidates,
         .fitter = fitter,
         .ring = ring,
-        .screen = screen,
+        .screen = screen || search_is_coarse(candidates),
         .best = -INFINITY,
         .stride = (size_t)ring->map.n_common + FAULTS_AT_ONCE,
     };

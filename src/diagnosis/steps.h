@@ -14,6 +14,7 @@ struct candidate {
     size_t index;        /* in the order of enumeration */
     bool fitted;
     double log_evidence; /* -INFINITY until fitted */
+    double log_likely;   /* what it was likely to be, if given up; -INFINITY: impossible, or not tried */
     double confidence;   /* after ranking */
 };
 

@@ -342,13 +342,15 @@ static double best_likelihood(const struct fitter *f, bool written_off_stay)
     return sum;
 }
 
-/* By how much F hardly falls by more, the next step promising `promise`; measured on simulated jobs. With
- * a reading about to tip over it can be more, but not once the steps have become small. */
+/* By how much F hardly falls any more, the next step promising `promise`; measured on simulated jobs.
+ * With a reading about to tip over there is no telling, until steps have become small. */
 static double most_to_come(const struct fitter *f, double promise)
 {
+    if (promise > 1.0)
+        return INFINITY;
     if (!may_tip(f))
         return 10.0 * promise + 1.0;
-    return 30.0 * promise + (promise < 0.01 ? 5.0 : 25.0);
+    return 30.0 * promise + (promise < 0.01 ? 5.0 : 2.0 * (double)f->n_observations);
 }
 
 /* What log Z may come to, F being `value` and the next step promising so much less; the factor is of
@@ -358,7 +360,7 @@ static struct prospect judge(const struct fitter *f, size_t d, double value, dou
     double log_det = cholesky_log_det(f->equations.hessian, d, f->equations.stride);
     double most = most_to_come(f, promise) - value;
     return (struct prospect){
-        .most = fmin(most, best_likelihood(f, true)) - 0.5 * fmax(0.0, 0.8 * log_det - 4.0),
+        .most = fmin(most, best_likelihood(f, promise < 1.0)) - 0.5 * fmax(0.0, 0.8 * log_det - 4.0),
         .likely = promise - value - 0.5 * log_det,
     };
 }
