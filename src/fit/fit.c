@@ -350,7 +350,7 @@ static double most_to_come(const struct fitter *f, double promise)
         return INFINITY;
     if (!may_tip(f))
         return 10.0 * promise + 1.0;
-    return 30.0 * promise + (promise < 0.01 ? 5.0 : 2.0 * (double)f->n_observations);
+    return 30.0 * promise + (promise < 0.01 ? 5.0 : fmax(50.0, 2.0 * (double)f->n_observations));
 }
 
 /* What log Z may come to, F being `value` and the next step promising so much less; the factor is of
