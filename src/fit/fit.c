@@ -374,6 +374,7 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
 {
     double value = objective_here(f, noise, d), promise = INFINITY;
     bool chord = false;
+    int stalled = 0;
     fit->converged = false;
     for (int iteration = 0; isfinite(value); iteration++) {
         /* Longer steps only once near an optimum: further off they can jump past it, into one that
@@ -404,7 +405,11 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
                 return true;
         }
         double decrease = before - value;
-        if (promise < 10.0 * enough && kept_its_promise(scale, promise, decrease, 0.1)) {
+        /* Where another point becomes the highest, F has a kink, and steps along it lead nowhere. */
+        bool stalls = !chord && scale < 1.0 && decrease < 10.0 * enough;
+        stalled = stalls ? stalled + 1 : 0;
+        if ((promise < 10.0 * enough && kept_its_promise(scale, promise, decrease, 0.1)) ||
+            stalled == 2) {
             fit->objective = value;
             fit->converged = true;
             return true;
