@@ -2,7 +2,7 @@
 #define _DEFAULT_SOURCE /* wait4 */
 
 /*
- * How long a diagnosis takes, against what it could be: bench_speed [JOBS [SEED [MOST]]]. Jobs are
+ * How long a diagnosis takes, against what it could be: bench_speed [JOBS [SEED [MOST [COMPARED]]]]. Jobs are
  * invented: rings laid here, faults and noise drawn from the shipped models. Each figure is a ratio
  * inside this run, of the processor's time where it is in process, medians over the jobs; each
  * job's time is the least of three where it is short.
@@ -12,6 +12,8 @@
  *   floor       the diagnosis against one analysis, evaluation with Jacobian and solution of the
  *               normal equations for every hypothesis; and what its steps take of it
  *   growth      rings of 5 to MOST (80) points, and the exponent of a fitted power
+ *   screening   COMPARED (1000) jobs of 4 to 14 points, half of them read at some other set-ups besides,
+ *               with screening and without. Fails where a confidence differs by more than 0.01
  *   command     `ringfettle diagnose` (path in RINGFETTLE) on a job of 10 and of 60 points, from
  *               start to exit by the clock, medians of several; its memory, as the system counts it
  */
@@ -332,6 +334,69 @@ static enum rf_status measure_jobs(size_t points, size_t jobs, uint32_t seed, bo
     return RF_OK;
 }
 
+/* --- screening --- */
+
+/* The largest difference of a confidence between two diagnoses of one job. */
+static double farthest(const struct rf_diagnosis *one, const struct rf_diagnosis *other)
+{
+    double largest = 0;
+    for (size_t i = 0; i < one->n_ranked; i++) {
+        double there = 0;
+        for (size_t k = 0; k < other->n_ranked; k++)
+            if (hypothesis_equal(&one->ranked[i].hypothesis, &other->ranked[k].hypothesis))
+                there = other->ranked[k].confidence;
+        /* What is not listed there has less than what is shown. */
+        if (there > 0 || one->ranked[i].confidence > confidence_shown + same_answer)
+            largest = fmax(largest, fabs(one->ranked[i].confidence - there));
+    }
+    return largest;
+}
+
+static enum rf_status compare_job(uint32_t seed, const struct rf_models *models, double times[2],
+                                  double *largest, struct rf_error *error)
+{
+    struct rf_job *ring = NULL;
+    struct truth *truth = NULL;
+    struct rf_diagnosis *screened = NULL, *whole = NULL;
+    const struct simulation simulation = {.seed = seed};
+    enum rf_status status = simulation_random_ring(
+        seed, seed % 2 == 0 ? PLAN_STANDARD : PLAN_EXTRA, &ring, error);
+    if (status == RF_OK)
+        status = simulate(ring, models, &simulation, &truth, error);
+    double start = now();
+    if (status == RF_OK)
+        status = diagnose(truth->job, models, true, &screened, error);
+    double between = now();
+    if (status == RF_OK)
+        status = diagnose(truth->job, models, false, &whole, error);
+    times[0] += between - start;
+    times[1] += now() - between;
+    if (status == RF_OK)
+        *largest = fmax(*largest, fmax(farthest(screened, whole), farthest(whole, screened)));
+    rf_diagnosis_destroy(screened);
+    rf_diagnosis_destroy(whole);
+    truth_destroy(truth);
+    rf_job_destroy(ring);
+    return status;
+}
+
+static enum rf_status measure_screening(size_t jobs, uint32_t seed, const struct rf_models *models,
+                                        bool *same, struct rf_error *error)
+{
+    double times[2] = {0, 0}, largest = 0;
+    enum rf_status status = RF_OK;
+    for (size_t i = 0; i < jobs && status == RF_OK; i++)
+        status = compare_job(seed * 1000000u + (uint32_t)i, models, times, &largest, error);
+    if (status != RF_OK || jobs == 0)
+        return status;
+    *same = *same && largest <= same_answer;
+    printf("%zu jobs with screening and without: largest difference of a confidence %.5f%s; "
+           "time %.2f of that without\n",
+           jobs, largest, largest <= same_answer ? "" : ": NOT THE SAME", times[0] / times[1]);
+    fflush(stdout);
+    return RF_OK;
+}
+
 /* --- growth --- */
 
 static enum rf_status measure_growth(size_t most, size_t jobs, uint32_t seed,
@@ -437,8 +502,9 @@ static enum rf_status measure_program(size_t points, size_t jobs, size_t runs, u
     return status;
 }
 
-static enum rf_status measure_all(size_t jobs, uint32_t seed, size_t most, bool *same,
-                                  const struct rf_models *models, struct rf_error *error)
+static enum rf_status measure_all(size_t jobs, uint32_t seed, size_t most, size_t compared,
+                                  bool *same, const struct rf_models *models,
+                                  struct rf_error *error)
 {
     enum rf_status status = RF_OK;
     printf("seed %lu\n", (unsigned long)seed);
@@ -447,12 +513,14 @@ static enum rf_status measure_all(size_t jobs, uint32_t seed, size_t most, bool 
         printf("the program, start to exit:\n");
         status = measure_program(10, jobs, 9, seed, models, error);
         if (status == RF_OK)
-            status = measure_program(60, 3, 3, seed, models, error);
+            status = measure_program(60, 5, 3, seed, models, error);
     }
     if (status == RF_OK)
         status = measure_jobs(POINTS, jobs, seed, true, models, same, error);
     if (status == RF_OK && most >= 40)
         status = measure_jobs(40, 3, seed, false, models, same, error);
+    if (status == RF_OK)
+        status = measure_screening(compared, seed, models, same, error);
     if (status == RF_OK) {
         printf("growth, whole diagnosis:\n");
         status = measure_growth(most, jobs, seed, models, error);
@@ -467,16 +535,17 @@ int main(int argc, char **argv)
     size_t jobs = argc > 1 ? strtoul(argv[1], NULL, 10) : 12;
     uint32_t seed = argc > 2 ? (uint32_t)strtoul(argv[2], NULL, 10) : 1;
     size_t most = argc > 3 ? strtoul(argv[3], NULL, 10) : 80;
+    size_t compared = argc > 4 ? strtoul(argv[4], NULL, 10) : 1000;
     bool same = true;
     if (jobs == 0 || jobs > MOST_JOBS || most < 5 || most > JOB_MAX_POINTS) {
-        fprintf(stderr, "usage: bench_speed [JOBS, 1 to %d [SEED [MOST, 5 to %d]]]\n", MOST_JOBS,
+        fprintf(stderr, "usage: bench_speed [JOBS, 1 to %d [SEED [MOST, 5 to %d [COMPARED]]]]\n", MOST_JOBS,
                 JOB_MAX_POINTS);
         return 2;
     }
     gsl_set_error_handler_off();
     enum rf_status status = rf_models_load(NULL, RF_RATES_CONSULTED, &models, &error);
     if (status == RF_OK)
-        status = measure_all(jobs, seed, most, &same, models, &error);
+        status = measure_all(jobs, seed, most, compared, &same, models, &error);
     if (status != RF_OK)
         fprintf(stderr, "%s: %s\n", rf_status_text(status), error.text);
     rf_models_destroy(models);
