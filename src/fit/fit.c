@@ -342,11 +342,21 @@ static double best_likelihood(const struct fitter *f, bool written_off_stay)
     return sum;
 }
 
+/* Whether a reading is beyond the bend of its log-likelihood, where that is no longer concave: it may slide
+ * off however small the steps are that it begins with. */
+static bool may_slide(const struct fitter *f)
+{
+    for (size_t i = 0; i < f->n_observations; i++)
+        if (f->weights[i] > written_off && (1.0 - f->weights[i]) * f->z[i] * f->z[i] > 1.0)
+            return true;
+    return false;
+}
+
 /* By how much F hardly falls any more, the next step promising `promise`; measured on simulated jobs.
  * With a reading about to tip over there is no telling, until steps have become small. */
 static double most_to_come(const struct fitter *f, double promise)
 {
-    if (promise > 1.0)
+    if (promise > 1.0 || may_slide(f))
         return INFINITY;
     if (!may_tip(f))
         return 10.0 * promise + 1.0;
