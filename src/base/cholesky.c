@@ -69,13 +69,19 @@ double cholesky_log_det(const double *U, size_t n, size_t stride)
     return 2.0 * sum;
 }
 
-WIDE_VECTORS void cholesky_half_solve(const double *U, size_t n, size_t stride, double *x)
+/* x becomes U⁻ᵀx. */
+static inline void substitute(const double *U, size_t n, size_t stride, double *x)
 {
     for (size_t k = 0; k < n; k++) {
         const double *row = U + k * stride;
         x[k] *= row[k];
         subtract(x + k + 1, row + k + 1, x[k], n - k - 1);
     }
+}
+
+WIDE_VECTORS void cholesky_half_solve(const double *U, size_t n, size_t stride, double *x)
+{
+    substitute(U, n, stride, x);
 }
 
 /* Σ a_k b_k. Four sums, so that additions need not wait for one another. */
@@ -93,11 +99,7 @@ static inline double dot(const double *restrict a, const double *restrict b, siz
 
 WIDE_VECTORS void cholesky_solve(const double *U, size_t n, size_t stride, double *x)
 {
-    for (size_t k = 0; k < n; k++) {
-        const double *row = U + k * stride;
-        x[k] *= row[k];
-        subtract(x + k + 1, row + k + 1, x[k], n - k - 1);
-    }
+    substitute(U, n, stride, x);
     for (size_t k = n; k-- > 0;) {
         const double *row = U + k * stride;
         x[k] = (x[k] - dot(row + k + 1, x + k + 1, n - k - 1)) * row[k];

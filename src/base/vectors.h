@@ -9,7 +9,7 @@
  * whose older releases give the copies names that other files do not find, nor under sanitizers, which
  * are not ready when the choice is made.
  */
-#if defined(__x86_64__) && defined(__gnu_linux__) && defined(__GNUC__) && !defined(__clang__) && \
+#if defined(__x86_64__) && defined(__gnu_linux__) && defined(__GNUC__) && !defined(__clang__) &&   \
     !defined(__SANITIZE_ADDRESS__)
 #define WIDE_VECTORS __attribute__((target_clones("avx2", "default")))
 #else

@@ -30,11 +30,11 @@ static int by_weight(const void *a, const void *b)
 }
 
 /*
- * Screening. A hypothesis is dropped if its evidence is as good as certain to stay `out_of_reach` below
- * the best so far: by its paths alone, or after the first stage. Otherwise it is fitted with the mixture
- * at once if it is likely to be better than that, or hardly anything can be; or it is put off until the
- * batch has shown how good the best is. What is dropped weighs nothing: all n of them together would have had less than
- * n · exp(−out_of_reach) of the confidence.
+ * Screening. A hypothesis is dropped if its evidence is as good as certain to stay `out_of_reach`
+ * below the best so far: by its paths alone, or by how its fit stands. After the first stage it is
+ * fitted with the mixture at once if it is likely to be better than the best, or hardly anything can
+ * be; else it is put off until the batch has shown how good the best is. What is dropped weighs
+ * nothing: all n of them together would have had less than n · exp(−out_of_reach) of the confidence.
  */
 enum { BATCH = 1024 };
 
@@ -49,10 +49,10 @@ struct ranking {
     const struct wiring *ring;
     struct wiring wiring; /* of the hypothesis at hand */
     bool screen;
-    double best;          /* the largest log weight so far … */
-    bool explained;       /* … of a hypothesis that explains the readings */
-    double *theta;        /* BATCH × stride: where the first stage ended, of those put off */
-    double *common;       /* stride: where it ended without a fault, from where the others start */
+    double best;    /* the largest log weight so far … */
+    bool explained; /* … of a hypothesis that explains the readings */
+    double *theta;  /* BATCH × stride: where the first stage ended, of those put off */
+    double *common; /* stride: where it ended without a fault, from where the others start */
     size_t stride;
     struct ordered *order; /* [BATCH] those put off, as they stand */
     double *most;          /* [BATCH] what their evidence can hardly exceed */
@@ -233,7 +233,8 @@ enum rf_status candidates_sort(struct candidates *candidates, struct rf_error *e
 {
     if (!sort_candidates(candidates))
         return fail_memory(error);
-    normalise(candidates); /* in the order of weight, so that the sum does not depend on any other */
+    /* In the order of weight, so that the sum does not depend on any other. */
+    normalise(candidates);
     return RF_OK;
 }
 
@@ -284,8 +285,9 @@ enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fit
     ranking.order = NEW_ARRAY(struct ordered, batch);
     ranking.most = NEW_ARRAY(double, batch);
     ranking.put_off = NEW_ARRAY(size_t, batch);
-    enum rf_status status = ranking.theta == NULL || ranking.common == NULL || ranking.order == NULL ||
-                                    ranking.most == NULL || ranking.put_off == NULL
+    enum rf_status status = ranking.theta == NULL || ranking.common == NULL ||
+                                    ranking.order == NULL || ranking.most == NULL ||
+                                    ranking.put_off == NULL
                                 ? fail_memory(error)
                                 : wiring_init(&ranking.wiring, ring->job, ring->models, error);
     if (status == RF_OK)

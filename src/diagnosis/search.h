@@ -3,12 +3,12 @@
 #define DIAGNOSIS_SEARCH_H
 
 /*
- * Which hypotheses are fitted, and when. On most rings: all, at once. On a very large one faults between
- * two places are most of them, as many as the square of the points, though neighbours among them read
- * much alike; these are fitted from coarse to fine. First those between places of a grid; then,
- * with the grid's spacing as a step, the neighbours of the best of each family, until none of them is
- * new; the same with half the step, down to one; in the end the neighbours of everything
- * within reach of the best. What is never fitted weighs nothing.
+ * Which hypotheses are fitted, and when. On most rings: all, at once. On a large one faults between two
+ * places are most of them, as many as the square of the points, though neighbours among them read
+ * much alike; so these are fitted from coarse to fine. First those between places of a grid; then, with
+ * the grid's spacing as a step, the neighbours of the best of each family, until none of them is
+ * new; the same with half the step, down to one; in the end the neighbours of everything within reach
+ * of the best, until none is new. What is never fitted weighs nothing.
  */
 
 #include "diagnosis/steps.h"

@@ -14,7 +14,7 @@ struct candidate {
     size_t index;        /* in the order of enumeration */
     bool fitted;
     double log_evidence; /* -INFINITY until fitted */
-    double log_likely;   /* what it was likely to be, if given up; -INFINITY: impossible, or not tried */
+    double log_likely;   /* what it was likely to be, if given up; -INFINITY: impossible, untried */
     double confidence;   /* after ranking */
 };
 
@@ -32,8 +32,8 @@ void candidates_finish(struct candidates *candidates); /* takes zeroed */
 double share_left_by_looks(const struct fault *fault, const struct rf_job *job,
                            const struct rf_models *models);
 
-/* rank.c: fits each that is not fitted yet, sorts them best first (ties keep enumeration order) and makes the confidences
- * sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
+/* rank.c: fits each that is not fitted yet, in the order that search.h gives, sorts them best first
+ * (ties keep enumeration order) and makes the confidences sum to one. With `screen`, what cannot reach a confidence worth telling is given up early; no
  * other confidence moves by more than some ten thousandths. */
 enum rf_status candidates_rank(struct candidates *candidates, struct fitter *fitter,
                                const struct wiring *ring, bool screen, struct rf_error *error);

@@ -7,8 +7,7 @@
 #include <assert.h>
 #include <string.h>
 
-bool equations_create(struct equations *e, const struct forward *forward,
-                      const struct wiring *ring)
+bool equations_create(struct equations *e, const struct forward *forward, const struct wiring *ring)
 {
     size_t most = (size_t)ring->map.n_common + FAULTS_AT_ONCE;
     *e = (struct equations){.n_runs = forward_runs(forward)};

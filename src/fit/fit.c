@@ -18,9 +18,9 @@ struct fitter {
     struct equations equations; /* at theta; H becomes its factor */
 
     double *theta, *trial, *step;
-    double step_promise;   /* of `step`, if it is one from theta; else negative */
-    double *weights, *z;   /* [observation] */
-    double *pull, *grip;   /* [measurement] Σ w z / σ and Σ curvature / σ² over its readings */
+    double step_promise; /* of `step`, if it is one from theta; else negative */
+    double *weights, *z; /* [observation] */
+    double *pull, *grip; /* [measurement] Σ w z / σ and Σ curvature / σ² over its readings */
 };
 
 enum noise { NOISE_NORMAL, NOISE_MIXTURE };
@@ -370,7 +370,8 @@ static struct prospect judge(const struct fitter *f, size_t d, double value, dou
     double log_det = cholesky_log_det(f->equations.hessian, d, f->equations.stride);
     double most = most_to_come(f, promise) - value;
     return (struct prospect){
-        .most = fmin(most, best_likelihood(f, promise < 1.0)) - 0.5 * fmax(0.0, 0.8 * log_det - 4.0),
+        .most =
+            fmin(most, best_likelihood(f, promise < 1.0)) - 0.5 * fmax(0.0, 0.8 * log_det - 4.0),
         .likely = promise - value - 0.5 * log_det,
     };
 }
@@ -398,8 +399,8 @@ static bool minimise(struct fitter *f, enum noise noise, size_t d, struct patien
         if (promise < 0.0)
             return false;
         fit->objective = value;
-        fit->abandoned = patience.hopeless > -INFINITY &&
-                         judge(f, d, value, promise).most < patience.hopeless;
+        fit->abandoned =
+            patience.hopeless > -INFINITY && judge(f, d, value, promise).most < patience.hopeless;
         double enough = fmax(patience.promise, patience.share * value), before = value;
         fit->converged = promise < enough;
         if (fit->abandoned || fit->converged || iteration == MOST_ITERATIONS)

@@ -8,11 +8,11 @@
 
 /* Columns in a row whose lengths are runs in a row, of the same cable. */
 struct cable {
-    size_t from, to; /* columns */
-    int run;         /* of column `from`; −1: one column that no run scales */
+    size_t from, to;    /* columns */
+    int run;            /* of column `from`; −1: one column that no run scales */
     int length, factor; /* the parameters that scale it; the sink: none */
-    double rate;     /* Ω at θ = 0 per metre of the run as recorded */
-    double rate_now; /* at θ */
+    double rate;        /* Ω at θ = 0 per metre of the run as recorded */
+    double rate_now;    /* at θ */
 };
 
 /*
@@ -32,8 +32,8 @@ struct board {
     size_t setup;
     struct loops *loops;
     size_t n_probes;
-    struct measurement *reads; /* [probe] */
-    struct probe *probes;      /* [probe], nodes of the wiring analysed */
+    struct measurement *reads;    /* [probe] */
+    struct probe *probes;         /* [probe], nodes of the wiring analysed */
     size_t first_point, n_points; /* the probes `highest` looks at; n_points 0: not measured */
 
     size_t n_columns;
@@ -46,9 +46,9 @@ struct board {
     size_t max_pieces;
     size_t *first_piece; /* [probe], and the end behind the last */
     struct piece *pieces;
-    int *n_steps;        /* [probe] */
-    int *step_run;       /* [probe × max_steps] */
-    double *current;     /* [stretch of one probe] */
+    int *n_steps;    /* [probe] */
+    int *step_run;   /* [probe × max_steps] */
+    double *current; /* [stretch of one probe] */
 };
 
 struct target {
@@ -64,13 +64,13 @@ struct forward {
     struct board boards[N_SETUPS];
     const struct wiring *wiring;
     int n_runs;
-    double *metres; /* [run] as recorded */
+    double *metres;     /* [run] as recorded */
     struct edge *edges; /* scratch of the analysis */
     int *wire_of_edge;
-    double *factors; /* [parameter] exp(σθ), then a 1: the sink, the parameter that is none */
-    double *scale;   /* [run] σ × its length at θ, m */
+    double *factors;     /* [parameter] exp(σθ), then a 1: the sink, the parameter that is none */
+    double *scale;       /* [run] σ × its length at θ, m */
     double *other_scale; /* [MAX_OTHERS] σ × gain; 0 from the sink on */
-    bool *reachable; /* [measurement] */
+    bool *reachable;     /* [measurement] */
     double *mean;
     struct slopes *slopes; /* [measurement] */
     double *steps;         /* n × max_steps */
@@ -187,8 +187,7 @@ static bool collect_board(struct forward *f, size_t setup, const struct rf_job *
 static bool size_board(struct board *board, const struct wiring *ring, size_t max_steps)
 {
     size_t edges = ring->max_wires + 2;
-    board->loops =
-        loops_create((size_t)ring->max_nodes, edges, board->n_probes, MAX_LOOPS);
+    board->loops = loops_create((size_t)ring->max_nodes, edges, board->n_probes, MAX_LOOPS);
     board->ohms = NEW_ARRAY(double, edges);
     board->length = NEW_ARRAY(int, edges);
     board->factor = NEW_ARRAY(int, edges);
@@ -225,9 +224,9 @@ static bool allocate(struct forward *f, const struct wiring *ring, size_t n)
     f->steps = NEW_ARRAY(double, n * f->max_steps);
     f->others = NEW_ARRAY(double, n * MAX_OTHERS);
     f->gradient = NEW_ARRAY(double, n * f->stride);
-    return f->measurements != NULL && f->targets != NULL && f->metres != NULL &&
-           f->edges != NULL && f->wire_of_edge != NULL && f->factors != NULL &&
-           f->scale != NULL && f->other_scale != NULL && f->reachable != NULL && f->mean != NULL && f->slopes != NULL &&
+    return f->measurements != NULL && f->targets != NULL && f->metres != NULL && f->edges != NULL &&
+           f->wire_of_edge != NULL && f->factors != NULL && f->scale != NULL &&
+           f->other_scale != NULL && f->reachable != NULL && f->mean != NULL && f->slopes != NULL &&
            f->steps != NULL && f->others != NULL && f->gradient != NULL;
 }
 
@@ -434,8 +433,9 @@ static double read_slopes(const struct forward *f, const struct board *board, si
 
 /* The mean: the instrument's gain and offsets, a lead left un-nulled. `others` (may be NULL) comes with
  * derivatives of R by logs, and leaves with those of the mean by θ. */
-static double read_through_instrument(const struct forward *f, const struct measurement *measurement,
-                                      double resistance, const double theta[], double *others)
+static double read_through_instrument(const struct forward *f,
+                                      const struct measurement *measurement, double resistance,
+                                      const double theta[], double *others)
 {
     const struct wiring *w = f->wiring;
     const struct parameter_map *map = &w->map;
@@ -543,8 +543,7 @@ enum rf_status forward_evaluate_means(struct forward *f, const double theta[])
             continue;
         double resistance =
             loops_read_stretches(board->loops, probe_of(f, board, i), board->current);
-        f->mean[i] =
-            read_through_instrument(f, &f->measurements[i], resistance, theta, NULL);
+        f->mean[i] = read_through_instrument(f, &f->measurements[i], resistance, theta, NULL);
     }
     return status;
 }

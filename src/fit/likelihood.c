@@ -7,7 +7,8 @@
 double instrument_sigma(const struct instrument_model *in, double ohms)
 {
     double relative = in->noise_relative * ohms;
-    return sqrt(in->noise_floor * in->noise_floor + relative * relative + in->step * in->step / 12.0);
+    return sqrt(in->noise_floor * in->noise_floor + relative * relative +
+                in->step * in->step / 12.0);
 }
 
 double reading_sigma(const struct rf_models *models, size_t setup, enum spot spot, double repeats,
@@ -37,8 +38,7 @@ struct observation observe(const struct reading *reading, size_t measurement, si
     }
     double density = instrument_misread_density(in, reading->ohms);
     o.ohms = reading->ohms;
-    o.sigma =
-        reading_sigma(models, reading->setup, reading->spot, (double)repeats, reading->ohms);
+    o.sigma = reading_sigma(models, reading->setup, reading->spot, (double)repeats, reading->ohms);
     o.log_peak = log((1.0 - in->open_wrong) * (1.0 - in->misread) / (o.sigma * sqrt(2.0 * M_PI)));
     o.misread = (1.0 - in->open_wrong) * in->misread * density;
     o.log_misread = log(o.misread);

@@ -36,15 +36,15 @@ struct loops {
     size_t max_nodes, max_edges, max_probes, max_loops;
 
     /* scratch of the analysis */
-    int *leader;         /* [node] union-find, then its supernode */
-    int *parent;         /* [supernode] tree; −1 at a root */
-    int *parent_edge;    /* [supernode] the edge towards the parent */
+    int *leader;              /* [node] union-find, then its supernode */
+    int *parent;              /* [supernode] tree; −1 at a root */
+    int *parent_edge;         /* [supernode] the edge towards the parent */
     signed char *parent_sign; /* +1: that edge runs from the supernode to its parent */
-    int *component;      /* [supernode] its root */
-    int *first, *next;   /* adjacency: [supernode] and [2·edge] lists of half edges */
-    int *queue;          /* supernodes, each after its parent */
+    int *component;           /* [supernode] its root */
+    int *first, *next;        /* adjacency: [supernode] and [2·edge] lists of half edges */
+    int *queue;               /* supernodes, each after its parent */
     size_t n_queue;
-    struct tail *tail;   /* [supernode] */
+    struct tail *tail;      /* [supernode] */
     unsigned char *in_tree; /* [edge] */
     unsigned char *wanted;  /* [supernode] a root: some probe reads its component */
     unsigned char *starts;  /* [column] a section may start there */
@@ -61,13 +61,13 @@ struct loops {
     struct member *members; /* the loops each section lies in */
     size_t *stretch_first;  /* [probe], and the end behind the last */
     struct stretch *stretches;
-    unsigned char *path;    /* [probe] */
+    unsigned char *path; /* [probe] */
 
     /* the numbers */
-    double *r;         /* [column] */
-    double *up_to;     /* [column] Σ r of the columns before it; and of all behind the last */
-    double *factor;    /* n_loops × n_loops: Cholesky factor of C D Cᵀ */
-    double *loop_flow; /* [loop] */
+    double *r;              /* [column] */
+    double *up_to;          /* [column] Σ r of the columns before it; and of all behind the last */
+    double *factor;         /* n_loops × n_loops: Cholesky factor of C D Cᵀ */
+    double *loop_flow;      /* [loop] */
     double *ohms, *current; /* [stretch of one probe] */
 };
 

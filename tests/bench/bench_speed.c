@@ -77,9 +77,9 @@ static enum rf_status lay_ring(size_t n, uint32_t seed, struct rf_job **ring,
                   gsl_ran_flat(generator, 2.0, 8.0));
     text_addf(&text, "], \"last_run_m\": %.1f}}", gsl_ran_flat(generator, 2.0, 8.0));
     gsl_rng_free(generator);
-    enum rf_status status = text.failed ? fail_memory(error)
-                                        : simulation_read_ring(text.bytes, text.length, "ring",
-                                                               ring, error);
+    enum rf_status status =
+        text.failed ? fail_memory(error)
+                    : simulation_read_ring(text.bytes, text.length, "ring", ring, error);
     text_finish(&text);
     return status;
 }
@@ -244,9 +244,9 @@ enum figure {
 };
 
 static const char *const figure_words[N_FIGURES] = {
-    "plain / ranking",           "plain / whole diagnosis",  "whole diagnosis / floor",
-    "  ranking / floor",         "  keeping fits / floor",   "  blind spots / floor",
-    "advice, besides / floor",   "whole diagnosis, ms",
+    "plain / ranking",         "plain / whole diagnosis", "whole diagnosis / floor",
+    "  ranking / floor",       "  keeping fits / floor",  "  blind spots / floor",
+    "advice, besides / floor", "whole diagnosis, ms",
 };
 
 static double largest_difference(const struct bench *b)
@@ -255,8 +255,8 @@ static double largest_difference(const struct bench *b)
     for (size_t i = 0; i < b->ranked.n; i++)
         for (size_t k = 0; k < b->candidates.n; k++)
             if (hypothesis_equal(&b->ranked.list[i].hypothesis, &b->candidates.list[k].hypothesis))
-                largest = fmax(largest, fabs(b->ranked.list[i].confidence -
-                                             b->candidates.list[k].confidence));
+                largest = fmax(
+                    largest, fabs(b->ranked.list[i].confidence - b->candidates.list[k].confidence));
     return largest;
 }
 
@@ -359,8 +359,8 @@ static enum rf_status compare_job(uint32_t seed, const struct rf_models *models,
     struct truth *truth = NULL;
     struct rf_diagnosis *screened = NULL, *whole = NULL;
     const struct simulation simulation = {.seed = seed};
-    enum rf_status status = simulation_random_ring(
-        seed, seed % 2 == 0 ? PLAN_STANDARD : PLAN_EXTRA, &ring, error);
+    enum rf_status status =
+        simulation_random_ring(seed, seed % 2 == 0 ? PLAN_STANDARD : PLAN_EXTRA, &ring, error);
     if (status == RF_OK)
         status = simulate(ring, models, &simulation, &truth, error);
     double start = now();
@@ -538,8 +538,8 @@ int main(int argc, char **argv)
     size_t compared = argc > 4 ? strtoul(argv[4], NULL, 10) : 1000;
     bool same = true;
     if (jobs == 0 || jobs > MOST_JOBS || most < 5 || most > JOB_MAX_POINTS) {
-        fprintf(stderr, "usage: bench_speed [JOBS, 1 to %d [SEED [MOST, 5 to %d [COMPARED]]]]\n", MOST_JOBS,
-                JOB_MAX_POINTS);
+        fprintf(stderr, "usage: bench_speed [JOBS, 1 to %d [SEED [MOST, 5 to %d [COMPARED]]]]\n",
+                MOST_JOBS, JOB_MAX_POINTS);
         return 2;
     }
     gsl_set_error_handler_off();
