@@ -6,7 +6,7 @@
 #include <math.h>
 
 enum {
-    FEW_ENOUGH = 2500, /* hypotheses; rings of 35 points have fewer */
+    FEW_ENOUGH = 2500, /* hypotheses; rings of 36 points have fewer */
     GRID_PLACES = 36,  /* at most */
     BEST = 12,         /* of each family */
     FAMILIES_MOST = 4,
