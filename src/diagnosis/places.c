@@ -98,27 +98,29 @@ enum rf_status add_up_places(struct rf_diagnosis *diagnosis, const struct candid
     size_t places = diagnosis->job->n_places, runs = n_runs(diagnosis->job);
     size_t n = 2 * places + runs + 1;
     double *shows = NEW_ARRAY(double, n), *missed = NEW_ARRAY(double, n);
-    diagnosis->places = NEW_ARRAY(struct place_chance, n);
+    struct place_chance *chances = diagnosis->places = NEW_ARRAY(struct place_chance, n);
+    if (shows == NULL || missed == NULL || chances == NULL) {
+        free(shows);
+        free(missed);
+        return fail_memory(error);
+    }
     struct adding adding = {
         .job = diagnosis->job,
         .shows = shows,
         .missed = missed,
-        .first = diagnosis->places,
-        .open = diagnosis->places,
-        .check = diagnosis->places + places,
-        .run = diagnosis->places + 2 * places,
-        .board = diagnosis->places + 2 * places + runs,
+        .first = chances,
+        .open = chances,
+        .check = chances + places,
+        .run = chances + 2 * places,
+        .board = chances + 2 * places + runs,
     };
-    bool ok = diagnosis->places != NULL && shows != NULL && missed != NULL;
-    for (size_t i = 0; i < n && ok; i++)
+    for (size_t i = 0; i < n; i++)
         missed[i] = 1.0;
-    for (size_t i = 0; i < candidates->n && ok; i++)
+    for (size_t i = 0; i < candidates->n; i++)
         add_hypothesis(&adding, diagnosis, &candidates->list[i], n);
     free(shows);
     free(missed);
-    if (!ok)
-        return fail_memory(error);
-    qsort(diagnosis->places, n, sizeof *diagnosis->places, by_chance);
+    qsort(chances, n, sizeof *chances, by_chance);
     while (diagnosis->n_places < n &&
            diagnosis->places[diagnosis->n_places].chance >= confidence_shown)
         diagnosis->n_places++;

@@ -16,11 +16,10 @@
 #include <stdio.h>
 #include <string.h>
 
-#define THREE_POINTS                                                                               \
+#define TWO_POINTS                                                                                 \
     "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\", \"run_m\": 6}, "  \
-    "{\"id\": \"P2\", \"run_m\": 5}, {\"id\": \"P3\", \"run_m\": 7}], \"last_run_m\": 7}, "        \
-    "\"readings\": {\"end_to_end\": {\"l\": 0.19, \"n\": 0.19, \"e\": 0.30}, \"cross_ln\": "       \
-    "{\"board\": 0.09, "
+    "{\"id\": \"P2\", \"run_m\": 5}], \"last_run_m\": 7}, \"readings\": {\"end_to_end\": {\"l\": " \
+    "0.14, \"n\": 0.14, \"e\": 0.22}, \"cross_ln\": {\"board\": 0.07, "
 
 /* Invented: a bad joint, spur and all, something of every section; a job nothing explains; one that
  * bad faces explain; one that two defects do. */
@@ -32,15 +31,13 @@ static const char *const jobs[] = {
     "{\"board\": 0.2, \"P1\": 0.23, \"P2\": [0.21, 0.22], \"P3\": 0.17, \"S1\": 0.25}}, "
     "\"access\": {\"P3\": {\"reach\": 10, \"open\": 6}}, \"opened\": [\"P1\"], "
     "\"found\": {\"family\": \"joint\", \"run\": [\"P2\", \"P3\"], \"conductor\": \"N\"}}",
-    "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\", \"run_m\": 6}, "
-    "{\"id\": \"P2\", \"run_m\": 5}], \"last_run_m\": 7}, \"readings\": {\"end_to_end\": "
-    "{\"l\": 9.0, \"n\": \"open\", \"e\": 0}, \"cross_ln\": {\"P1\": 3.0, \"P2\": 0}}}",
-    THREE_POINTS
-    "\"P1\": 0.11, \"P2\": [0.24, 0.23], \"P3\": [0.19, 0.18]}, \"cross_le\": {\"board\": "
-    "0.12, \"P1\": [0.23, 0.24], \"P2\": 0.19, \"P3\": 0.29}}}",
-    THREE_POINTS
-    "\"P1\": 0.09, \"P2\": 0.72, \"P3\": [0.43, 0.44]}, \"cross_le\": {\"board\": 0.12, "
-    "\"P1\": 0.13, \"P2\": 0.76, \"P3\": 0.13}}}",
+    "{\"format\": \"ringfettle-job/1\", \"ring\": {\"points\": [{\"id\": \"P1\", \"run_m\": 6}], "
+    "\"last_run_m\": 7}, \"readings\": {\"end_to_end\": {\"l\": 9.0, \"n\": \"open\", \"e\": 0}, "
+    "\"cross_ln\": {\"P1\": 3.0}, \"cross_le\": {\"P1\": 0}}}",
+    TWO_POINTS "\"P1\": [0.08, 0.12], \"P2\": [0.11, 0.11]}, \"cross_le\": {\"board\": 0.09, "
+               "\"P1\": [0.39, 0.32], \"P2\": [0.17, 0.16]}}}",
+    TWO_POINTS "\"P1\": 0.67, \"P2\": 0.57}, \"cross_le\": {\"board\": 0.09, \"P1\": 0.69, "
+               "\"P2\": 0.59}}}",
 };
 
 static const char *const assumes[] = {NULL, NULL, "faces", "two_defects"};
@@ -88,10 +85,10 @@ static enum rf_status go(const char *text, enum step step, const struct rf_diagn
     struct rf_error error = {0};
     allocations = 0;
     fail_at = failing;
-    enum rf_status status =
-        step == STEP_DIAGNOSE ? read_and_diagnose(text, &own_job, &own_diagnosis, &error)
-        : step == STEP_ADVISE ? rf_advise(diagnosis, &own_advice, &error)
-                              : write_report(step, diagnosis, advice, &error);
+    enum rf_status status = step == STEP_DIAGNOSE
+                                ? read_and_diagnose(text, &own_job, &own_diagnosis, &error)
+                            : step == STEP_ADVISE ? rf_advise(diagnosis, &own_advice, &error)
+                                                  : write_report(step, diagnosis, advice, &error);
     fail_at = 0;
     *made = allocations;
     rf_advice_destroy(own_advice);
@@ -120,10 +117,13 @@ START_TEST(each_fails)
     ck_assert_int_eq(rf_advise(diagnosis, &advice, &error), RF_OK);
     ck_assert_int_eq(go(text, step, diagnosis, advice, 0, &needed), RF_OK);
     ck_assert_uint_gt(needed, 3);
-    for (size_t i = 1; i <= needed; i++) {
+    /* What is tried where no one defect explains a job comes late and takes long; the two jobs share it,
+     * and every second allocation each. */
+    size_t stride = index < IN_ALL_STEPS ? 1 : 2;
+    for (size_t i = 1 + (size_t)index % stride; i <= needed; i += stride) {
         enum rf_status status = go(text, step, diagnosis, advice, i, &made);
-        ck_assert_msg(status == RF_MEMORY, "%s: allocation %zu of %zu: status %d",
-                      step_names[step], i, needed, (int)status);
+        ck_assert_msg(status == RF_MEMORY, "%s: allocation %zu of %zu: status %d", step_names[step],
+                      i, needed, (int)status);
     }
     printf("job %d, %s: %zu allocations\n", index, step_names[step], needed);
     rf_advice_destroy(advice);
