@@ -18,11 +18,6 @@ static const double second_share = 0.05;
 /* Of the log of their weight, by passes after the first. */
 static const double hardly_gained = 12.0;
 
-static double log_weight(const struct candidate *candidate)
-{
-    return candidate->log_prior + candidate->log_looks + candidate->log_evidence;
-}
-
 static bool is_kept(const struct candidate kept[], size_t n, const struct hypothesis *hypothesis)
 {
     for (size_t i = 0; i < n; i++)

@@ -11,11 +11,6 @@
 /* Logs of posteriors nearer than this are ties; rounding alone moves them by less. */
 static const double tie = 1e-6;
 
-static double log_weight(const struct candidate *candidate)
-{
-    return candidate->log_prior + candidate->log_looks + candidate->log_evidence;
-}
-
 struct ordered {
     double log_weight;
     size_t index;
@@ -76,11 +71,6 @@ static enum rf_status analyse(struct ranking *r, const struct candidate *candida
     wiring_copy(&r->wiring, r->ring);
     hypothesis_apply(&candidate->hypothesis, &r->wiring, NULL);
     return fitter_analyse(r->fitter, &r->wiring);
-}
-
-static double log_share(const struct candidate *candidate)
-{
-    return candidate->log_prior + candidate->log_looks;
 }
 
 static double hopeless_below(const struct ranking *r, const struct candidate *candidate)

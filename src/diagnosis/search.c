@@ -133,7 +133,7 @@ static void take_neighbours(struct search *s, size_t family, size_t index)
 /* Log of the weight, or of what it was likely to be when it was given up. */
 static double worth(const struct candidate *candidate)
 {
-    return candidate->log_prior + candidate->log_looks +
+    return log_share(candidate) +
            (candidate->fitted ? candidate->log_evidence : candidate->log_likely);
 }
 

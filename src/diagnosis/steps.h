@@ -18,6 +18,17 @@ struct candidate {
     double confidence;   /* after ranking */
 };
 
+/* Logs of what it weighs before it is fitted, and after. */
+static inline double log_share(const struct candidate *candidate)
+{
+    return candidate->log_prior + candidate->log_looks;
+}
+
+static inline double log_weight(const struct candidate *candidate)
+{
+    return log_share(candidate) + candidate->log_evidence;
+}
+
 struct candidates {
     struct candidate *list;
     size_t n, capacity;

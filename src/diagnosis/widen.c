@@ -38,7 +38,7 @@ static double log_add(double one, double other)
 double log_evidence_of_all(const struct candidates *candidates)
 {
     const struct candidate *first = &candidates->list[0];
-    return first->log_prior + first->log_looks + first->log_evidence - log(first->confidence);
+    return log_weight(first) - log(first->confidence);
 }
 
 static enum rf_status fit_leaders(const struct candidates *candidates, struct fitter *fitter,
@@ -49,14 +49,13 @@ static enum rf_status fit_leaders(const struct candidates *candidates, struct fi
     for (size_t i = 0; i < candidates->n && i < LEADERS; i++) {
         const struct candidate *candidate = &candidates->list[i];
         struct fit fit;
-        if (candidate->log_prior + candidate->log_looks == -INFINITY)
+        if (log_share(candidate) == -INFINITY)
             continue;
         wiring_copy(wiring, ring);
         hypothesis_apply(&candidate->hypothesis, wiring, NULL);
         if (fitter_fit(fitter, wiring, NULL, &fit) != RF_OK)
             return RF_NUMERICAL;
-        *log_evidence =
-            log_add(*log_evidence, candidate->log_prior + candidate->log_looks + fit.log_evidence);
+        *log_evidence = log_add(*log_evidence, log_share(candidate) + fit.log_evidence);
     }
     return RF_OK;
 }

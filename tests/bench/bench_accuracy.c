@@ -23,6 +23,7 @@
  */
 
 #include "calibration.h"
+#include "difference.h"
 
 #include "base/memory.h"
 #include "diagnosis/diagnosis.h"
@@ -76,33 +77,13 @@ static void count(struct score *score, const struct rf_diagnosis *d, double mill
         score->timed[score->n_timed++] = milliseconds;
 }
 
-static double confidence_of(const struct rf_diagnosis *d, const struct hypothesis *hypothesis)
-{
-    for (size_t i = 0; i < d->n_ranked; i++)
-        if (hypothesis_equal(&d->ranked[i].hypothesis, hypothesis))
-            return d->ranked[i].confidence;
-    return 0;
-}
-
-static double largest_difference(const struct rf_diagnosis *one, const struct rf_diagnosis *other)
-{
-    double largest = 0;
-    for (size_t i = 0; i < one->n_ranked; i++) {
-        const struct ranked *ranked = &one->ranked[i];
-        largest = fmax(largest,
-                       fabs(ranked->confidence - confidence_of(other, &ranked->hypothesis)));
-    }
-    return largest;
-}
-
 static enum rf_status compare_unscreened(struct score *score, const struct rf_diagnosis *d,
-                                         struct rf_error *error)
+                                         const struct rf_models *models, struct rf_error *error)
 {
     struct rf_diagnosis *whole = NULL;
-    enum rf_status status = diagnose(d->job, d->models, false, &whole, error);
+    enum rf_status status = diagnose(d->job, models, false, &whole, error);
     if (status == RF_OK)
-        score->screening = fmax(score->screening, fmax(largest_difference(d, whole),
-                                                       largest_difference(whole, d)));
+        score->screening = fmax(score->screening, largest_change(d, whole));
     rf_diagnosis_destroy(whole);
     return status;
 }
@@ -124,7 +105,7 @@ static enum rf_status run_job(struct score *score, const struct rf_models *model
             count(score, diagnosis, now() - start);
     }
     if (status == RF_OK && seed % UNSCREENED_EVERY == 0)
-        status = compare_unscreened(score, diagnosis, error);
+        status = compare_unscreened(score, diagnosis, models, error);
     rf_diagnosis_destroy(diagnosis);
     truth_destroy(truth);
     rf_job_destroy(ring);

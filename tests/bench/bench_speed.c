@@ -21,6 +21,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "diagnosis/steps.h"
+#include "difference.h"
 #include "plain.h"
 #include "simulation/simulation.h"
 
@@ -336,22 +337,6 @@ static enum rf_status measure_jobs(size_t points, size_t jobs, uint32_t seed, bo
 
 /* --- screening --- */
 
-/* The largest difference of a confidence between two diagnoses of one job. */
-static double farthest(const struct rf_diagnosis *one, const struct rf_diagnosis *other)
-{
-    double largest = 0;
-    for (size_t i = 0; i < one->n_ranked; i++) {
-        double there = 0;
-        for (size_t k = 0; k < other->n_ranked; k++)
-            if (hypothesis_equal(&one->ranked[i].hypothesis, &other->ranked[k].hypothesis))
-                there = other->ranked[k].confidence;
-        /* What is not listed there has less than what is shown. */
-        if (there > 0 || one->ranked[i].confidence > confidence_shown + same_answer)
-            largest = fmax(largest, fabs(one->ranked[i].confidence - there));
-    }
-    return largest;
-}
-
 static enum rf_status compare_job(uint32_t seed, const struct rf_models *models, double times[2],
                                   double *largest, struct rf_error *error)
 {
@@ -372,7 +357,7 @@ static enum rf_status compare_job(uint32_t seed, const struct rf_models *models,
     times[0] += between - start;
     times[1] += now() - between;
     if (status == RF_OK)
-        *largest = fmax(*largest, fmax(farthest(screened, whole), farthest(whole, screened)));
+        *largest = fmax(*largest, largest_change(screened, whole));
     rf_diagnosis_destroy(screened);
     rf_diagnosis_destroy(whole);
     truth_destroy(truth);
